@@ -1,0 +1,97 @@
+"""What a stepper is, and what it sees.
+
+A step is a sequence of stages. A stage works on one subdomain (a `Patch`) and returns, on the solve part of the patch,
+the normal velocity at the end of the step and the transport through each edge, averaged over the step. Between stages the
+caller makes the owners' values known everywhere and updates the level from them,
+
+    eta = eta^n - dt div(transport),
+
+so that what leaves one face enters another whatever the subdomains disagree about. A stepper knows no neighbour, no rank,
+no file and no clock. One domain is one patch that has no neighbours.
+
+Guidelines for a new stepper:
+1. it is a frozen dataclass of its settings; it holds no state of a run;
+2. `stages` exchanges a step; `order` is the claimed order, tested by the contract test;
+3. what a later stage needs from an earlier one goes into `work`, a dict per patch, emptied before each step;
+4. `repeat` redoes the last stage with new values beyond the solve part (a Schwarz sweep); it must leave `work` reusable;
+5. failures of an action are values: `StageResult.reason` is the sentence that will be shown.
+"""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+from typing import Protocol
+
+import numpy as np
+
+
+@dataclass
+class State:
+    """Level and current on all faces and edges of a (restricted) mesh.
+
+    eta   (nf,) level above the datum, m; total depth h = mesh.depth + eta
+    u     (ne,) velocity along the edge normal, m s-1; zero on coast edges
+    """
+
+    eta: np.ndarray
+    u: np.ndarray
+
+    def copy(self) -> "State":
+        return State(self.eta.copy(), self.u.copy())
+
+
+@dataclass
+class StageResult:
+    """Outcome of one stage on the solve part of a patch.
+
+    u           (ms,) velocity at the end of the step
+    transport   (ms,) time-mean transport per unit length of edge over the step, m2 s-1
+    products    products of L spent
+    error       estimated energy norm of the error of the action
+    scale       energy norm of dt F(U^n): what a relative tolerance refers to
+    reason      "" or why the stage failed
+    """
+
+    u: np.ndarray
+    transport: np.ndarray
+    products: int = 0
+    error: float = 0.0
+    scale: float = 0.0
+    reason: str = ""
+
+
+class Patch(Protocol):
+    """One subdomain as a stepper sees it.
+
+    Its mesh holds the solve faces first, its solve edges (both faces are solve faces) first, then what the tendency needs
+    beyond. Vectors of the solve part are (eta of solve faces, u of solve edges), length mf + ms.
+    """
+
+    mf: int
+    ms: int
+
+    def rates(self, state: State, time: float) -> np.ndarray:
+        """Tendency on the solve part, (mf + ms,)."""
+
+    def transport(self, state: State) -> np.ndarray:
+        """h_e u on the solve edges, (ms,), m2 s-1."""
+
+    def wave_operator(self, state: State):
+        """Reference-state wave operator of the solve part; has `.depth_edge` (ms,), the D_e it was made with, and `.apply(x)` = L x."""
+
+    def jacobian(self, state: State, time: float):
+        """Current-state Jacobian of the solve part."""
+
+    def face_mean(self, x: np.ndarray) -> np.ndarray:
+        """Two-face mean (ms,) of a face vector of the solve part (mf,)."""
+
+
+class Stepper(Protocol):
+    stages: int
+    order: int
+
+    def stage(self, index: int, patch: Patch, work: dict, start: State, latest: State, time: float, step: float, scale: float) -> StageResult:
+        """Do stage `index` (0-based). `start` is U^n, `latest` the exchanged result of the stage before."""
+
+    def repeat(self, patch: Patch, work: dict, start: State, latest: State, time: float, step: float, scale: float) -> StageResult:
+        """Redo the last stage with the values of `latest` beyond the solve part."""
