@@ -63,7 +63,7 @@ class StageResult:
 class Patch(Protocol):
     """One subdomain as a stepper sees it.
 
-    Its mesh holds the solve faces first, its solve edges (both faces are solve faces) first, then what the tendency needs
+    Its mesh holds the solve faces first, its solve edges (both faces are solve faces) first, then what the rates need
     beyond. Vectors of the solve part are (eta of solve faces, u of solve edges), length mf + ms.
     """
 
@@ -71,19 +71,28 @@ class Patch(Protocol):
     ms: int
 
     def rates(self, state: State, time: float) -> np.ndarray:
-        """Tendency on the solve part, (mf + ms,)."""
+        """Return dU/dt on the solve part, (mf + ms,)."""
 
     def transport(self, state: State) -> np.ndarray:
-        """h_e u on the solve edges, (ms,), m2 s-1."""
+        """Return h_e u on the solve edges, (ms,), m2 s-1."""
 
-    def wave_operator(self, state: State):
-        """Reference-state wave operator of the solve part; has `.depth_edge` (ms,), the D_e it was made with, and `.apply(x)` = L x."""
+    def solve_part(self, state: State) -> np.ndarray:
+        """Return (eta, u) of the solve part, (mf + ms,)."""
 
-    def jacobian(self, state: State, time: float):
-        """Current-state Jacobian of the solve part."""
+    def linear_operator(self, kind: str, state: State, time: float):
+        """Return the operator of the solve part, "wave" or "jacobian", about `state`.
 
-    def face_mean(self, x: np.ndarray) -> np.ndarray:
-        """Two-face mean (ms,) of a face vector of the solve part (mf,)."""
+        It satisfies exponential.contract.Operator and adds `apply(x)` = L x and `transport(x)`, (ms,): the change of
+        h_e u that goes with the change x, so that the level rows of L x are -div transport(x).
+        """
+
+
+def beyond(patch: Patch, inside: State, outside: State) -> State:
+    """Return `inside` on the solve part and `outside` beyond it. Not collective."""
+    mixed = outside.copy()
+    mixed.eta[: patch.mf] = inside.eta[: patch.mf]
+    mixed.u[: patch.ms] = inside.u[: patch.ms]
+    return mixed
 
 
 class Stepper(Protocol):
