@@ -64,11 +64,16 @@ class Patch(Protocol):
     """One subdomain as a stepper sees it.
 
     Its mesh holds the solve faces first, its solve edges (both faces are solve faces) first, then what the rates need
-    beyond. Vectors of the solve part are (eta of solve faces, u of solve edges), length mf + ms.
+    beyond. Vectors of the solve part are (eta of solve faces, u of solve edges), length mf + ms. `energy_weights` are the
+    square roots of the energy weights at rest, (mf + ms,).
     """
 
     mf: int
     ms: int
+    energy_weights: np.ndarray
+
+    def divergence(self, transport: np.ndarray) -> np.ndarray:
+        """Return the divergence (nf,), m s-1, of a transport on all edges held (ne,), m2 s-1."""
 
     def rates(self, state: State, time: float) -> np.ndarray:
         """Return dU/dt on the solve part, (mf + ms,)."""
