@@ -39,7 +39,9 @@ def distribute(comm: MPI.Comm, mesh: Mesh | None, count: int, overlap: int) -> S
     Raises InputError on all ranks when the mesh has too few faces, or fewer subdomains than ranks are asked for.
     """
     if count < comm.size:
-        raise InputError(f"{count} subdomains for {comm.size} ranks: every rank needs at least one; use fewer ranks or more subdomains")
+        raise InputError(
+            f"{count} subdomains for {comm.size} ranks: every rank needs at least one; use fewer ranks or more subdomains"
+        )
     owner = on_root(comm, "cutting the mesh", lambda: partition(mesh, count))
     parts: list[Subdomain] = []
     if comm.rank == 0:

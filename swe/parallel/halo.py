@@ -23,7 +23,9 @@ class Halo:
     rank_of     maps a subdomain to its rank
     """
 
-    def __init__(self, comm: MPI.Comm, local: dict[int, int], take: Sequence[Pattern], give: Sequence[Pattern], rank_of, fields: int):
+    def __init__(
+        self, comm: MPI.Comm, local: dict[int, int], take: Sequence[Pattern], give: Sequence[Pattern], rank_of, fields: int
+    ):
         self.comm, self.fields = comm, fields
         self.messages = 0
         self.bytes_sent = 0
@@ -41,7 +43,9 @@ class Halo:
                 if target not in local:
                     sends.setdefault(rank_of(target), []).append((index, target, position, where))
         self._sends = [self._channel(rank, sorted(parts, key=_pair), comm.Send_init) for rank, parts in sorted(sends.items())]
-        self._receives = [self._channel(rank, sorted(parts, key=_pair), comm.Recv_init) for rank, parts in sorted(receives.items())]
+        self._receives = [
+            self._channel(rank, sorted(parts, key=_pair), comm.Recv_init) for rank, parts in sorted(receives.items())
+        ]
         self._requests = [request for _, _, request in self._receives + self._sends]
 
     def _channel(self, rank: int, parts: list, init):

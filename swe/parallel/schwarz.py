@@ -23,6 +23,7 @@ from mpi4py import MPI
 from swe.errors import NumericalFailure
 from swe.parallel.halo import Halo
 from swe.parallel.partition import block, rank_of
+from swe.parallel.phases import Phases
 from swe.parallel.subdomain import Subdomain
 from swe.steppers.contract import Patch, StageResult, State, Stepper
 
@@ -77,6 +78,7 @@ class Basin:
         where = dict(rank_of=lambda index: rank_of(index, count, comm.size))
         self.halo = Halo(comm, local, [p.take for p in self.parts], [p.give for p in self.parts], fields=2, **where)
         self.states = [State(np.zeros(p.mesh.n_faces), np.zeros(p.mesh.n_edges)) for p in self.parts]
+        self.phases = Phases()
         self.products = np.zeros(len(self.parts), dtype=np.int64)
         self._rim_weight = [_level_per_speed(part, gravity) for part in self.parts]
 
@@ -88,7 +90,9 @@ class Basin:
         ]
         return self.comm.allreduce(max(norms, default=0.0), op=MPI.MAX)
 
-    def advance(self, stepper: Stepper, agreement: Agreement, time: float, step: float, scale: float, stop: bool = False) -> StepReport:
+    def advance(
+        self, stepper: Stepper, agreement: Agreement, time: float, step: float, scale: float, stop: bool = False
+    ) -> StepReport:
         """Take one step and replace the states. Collective.
 
         Raises NumericalFailure, on all ranks alike and with the states unchanged, when an action does not converge, a
@@ -102,20 +106,22 @@ class Basin:
         worst = 0.0
         reasons = []
         for index in range(stepper.stages):
-            results = [
-                stepper.stage(index, patch, own, begun, now, time, step, scale)
-                for patch, own, begun, now in zip(self.patches, work, start, latest, strict=True)
-            ]
+            with self.phases("stages"):
+                results = [
+                    stepper.stage(index, patch, own, begun, now, time, step, scale)
+                    for patch, own, begun, now in zip(self.patches, work, start, latest, strict=True)
+                ]
             before, latest = latest, self._publish(start, results, step)
             first_scale = max([first_scale] + [result.scale for result in results])
             worst = max([worst] + [result.error for result in results])
             reasons += [result.reason for result in results if result.reason]
         report = self._close(results, before, latest, first_scale, worst, reasons, stop, 0)
         while report.mismatch > agreement.tolerance and report.repeats < agreement.repeats:
-            results = [
-                stepper.repeat(patch, own, begun, now, time, step, scale)
-                for patch, own, begun, now in zip(self.patches, work, start, latest, strict=True)
-            ]
+            with self.phases("stages"):
+                results = [
+                    stepper.repeat(patch, own, begun, now, time, step, scale)
+                    for patch, own, begun, now in zip(self.patches, work, start, latest, strict=True)
+                ]
             latest = self._publish(start, results, step)
             reasons += [result.reason for result in results if result.reason]
             report = self._close(results, before, latest, first_scale, worst, reasons, stop, report.repeats + 1)
@@ -135,7 +141,8 @@ class Basin:
             u[: part.ms], transport[: part.ms] = result.u, result.transport
             us.append(u)
             transports.append(transport)
-        self.halo.exchange(us, transports)
+        with self.phases("exchange"):
+            self.halo.exchange(us, transports)
         self.products += [result.products for result in results]
         self.transports = transports
         return [
@@ -159,16 +166,25 @@ class Basin:
         for part, then, now in zip(self.parts, before, latest, strict=True):
             eta, u = now.eta[: part.n_owned], now.u[: part.ms]
             thin = part.mesh.depth[: part.n_owned] + eta
-            found = (np.max(np.abs(eta - then.eta[: part.n_owned])), np.max(np.abs(u), initial=0.0), eta.max(), -eta.min(), -thin.min())
+            found = (
+                np.max(np.abs(eta - then.eta[: part.n_owned])),
+                np.max(np.abs(u), initial=0.0),
+                eta.max(),
+                -eta.min(),
+                -thin.min(),
+            )
             # NaN must win: fmax would hide it, and MPI.MAX may
             local[5:] = np.maximum(local[5:], np.where(np.isfinite(found), found, np.inf))
         values = np.empty_like(local)
-        self.comm.Allreduce(local, values, op=MPI.MAX)
+        with self.phases("agreement"):
+            self.comm.Allreduce(local, values, op=MPI.MAX)
         failed, stopped, mismatch, scale, worst, change, speed, highest, deepest, dry = (float(v) for v in values)
         if failed:
             raise NumericalFailure(self._first_reason(reasons))
         if not np.all(np.isfinite(values[5:])):
-            raise NumericalFailure(f"level or current is no longer a finite number ({self._place_of_bad(latest)}); use a shorter step")
+            raise NumericalFailure(
+                f"level or current is no longer a finite number ({self._place_of_bad(latest)}); use a shorter step"
+            )
         if -dry <= 0.0:
             raise NumericalFailure(
                 f"a face ran dry ({self._place_of_dry(latest)}): total depth must stay above 0 m because wetting and drying is not "
@@ -181,10 +197,14 @@ class Basin:
         return next(text for text in everything if text)
 
     def _place_of_bad(self, states: list[State]) -> str:
-        return self._place([np.where(np.isfinite(s.eta[: p.n_owned]), 1.0, -1.0) for p, s in zip(self.parts, states, strict=True)], states)
+        return self._place(
+            [np.where(np.isfinite(s.eta[: p.n_owned]), 1.0, -1.0) for p, s in zip(self.parts, states, strict=True)], states
+        )
 
     def _place_of_dry(self, states: list[State]) -> str:
-        return self._place([p.mesh.depth[: p.n_owned] + s.eta[: p.n_owned] for p, s in zip(self.parts, states, strict=True)], states)
+        return self._place(
+            [p.mesh.depth[: p.n_owned] + s.eta[: p.n_owned] for p, s in zip(self.parts, states, strict=True)], states
+        )
 
     def _place(self, values: list[np.ndarray], states: list[State]) -> str:
         """Name the face where `values` is smallest over all ranks. Collective."""
@@ -202,10 +222,11 @@ def _where(part: Subdomain, face: int, state: State) -> str:
         place = f"longitude {lon:.4f}, latitude {lat:.4f}"
     else:
         place = f"x {x:.0f} m, y {y:.0f} m"
-    return f"face {part.mesh.face_id[face]} at {place}, resting depth {part.mesh.depth[face]:.4g} m, level {state.eta[face]:.4g} m"
+    return (
+        f"face {part.mesh.face_id[face]} at {place}, resting depth {part.mesh.depth[face]:.4g} m, level {state.eta[face]:.4g} m"
+    )
 
 
 def _level_per_speed(part: Subdomain, gravity: float) -> np.ndarray:
     depth = part.mesh.depth[part.mesh.edge_faces[part.rim]].mean(axis=1)
     return np.sqrt(np.maximum(depth, 0.0) / gravity)
-

@@ -104,8 +104,12 @@ class Stepper(Protocol):
     stages: int
     order: int
 
-    def stage(self, index: int, patch: Patch, work: dict, start: State, latest: State, time: float, step: float, scale: float) -> StageResult:
+    def stage(
+        self, index: int, patch: Patch, work: dict, start: State, latest: State, time: float, step: float, scale: float
+    ) -> StageResult:
         """Do stage `index` (0-based). `start` is U^n, `latest` the exchanged result of the stage before."""
 
-    def repeat(self, patch: Patch, work: dict, start: State, latest: State, time: float, step: float, scale: float) -> StageResult:
+    def repeat(
+        self, patch: Patch, work: dict, start: State, latest: State, time: float, step: float, scale: float
+    ) -> StageResult:
         """Redo the last stage with the values of `latest` beyond the solve part."""

@@ -35,7 +35,9 @@ class OneStage:
     stages: int = 1
     order: int = 2
 
-    def stage(self, index: int, patch: Patch, work: dict, start: State, latest: State, time: float, step: float, scale: float) -> StageResult:
+    def stage(
+        self, index: int, patch: Patch, work: dict, start: State, latest: State, time: float, step: float, scale: float
+    ) -> StageResult:
         middle = time + 0.5 * step
         operator = patch.linear_operator("jacobian", start, middle)
         rates = patch.rates(start, middle)
@@ -47,7 +49,9 @@ class OneStage:
         work.update(operator=operator, rates=rates, allowed=allowed, u=u, transport=transport)
         return StageResult(u, transport, action.products, action.error, own, action.reason)
 
-    def repeat(self, patch: Patch, work: dict, start: State, latest: State, time: float, step: float, scale: float) -> StageResult:
+    def repeat(
+        self, patch: Patch, work: dict, start: State, latest: State, time: float, step: float, scale: float
+    ) -> StageResult:
         operator = work["operator"]
         rim = patch.rates(beyond(patch, start, latest), time + 0.5 * step) - work["rates"]
         action = phi_action(operator, rim, step, (2, 3), work["allowed"], self.method, self.largest)

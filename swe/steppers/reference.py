@@ -32,7 +32,14 @@ class ReferenceReport:
 
 
 def integrate(
-    system: System, start: np.ndarray, begin: float, end: float, relative: float, absolute: np.ndarray, first_step: float, pair: str = "8vr"
+    system: System,
+    start: np.ndarray,
+    begin: float,
+    end: float,
+    relative: float,
+    absolute: np.ndarray,
+    first_step: float,
+    pair: str = "8vr",
 ) -> tuple[np.ndarray, ReferenceReport]:
     """Integrate from `begin` to `end` and return the local part of the result and a report. Collective.
 
@@ -65,7 +72,9 @@ def integrate(
     ts.setTolerances(rtol=relative, atol=tolerance)
     ts.solve(solution)
     if ts.getConvergedReason() <= 0:
-        raise NumericalFailure(f"reference integration stopped at {ts.getTime():.6g} s of {end:.6g} s: PETSc reason {ts.getConvergedReason()}")
+        raise NumericalFailure(
+            f"reference integration stopped at {ts.getTime():.6g} s of {end:.6g} s: PETSc reason {ts.getConvergedReason()}"
+        )
     report = ReferenceReport(ts.getStepNumber(), ts.getStepRejections())
     result = solution.getArray().copy()
     for item in (ts, solution, tolerance):

@@ -27,7 +27,9 @@ class RungeKutta4:
     stages: int = 4
     order: int = 4
 
-    def stage(self, index: int, patch: Patch, work: dict, start: State, latest: State, time: float, step: float, scale: float) -> StageResult:
+    def stage(
+        self, index: int, patch: Patch, work: dict, start: State, latest: State, time: float, step: float, scale: float
+    ) -> StageResult:
         rates_u = patch.rates(latest, time + NODE[index] * step)[patch.mf :]
         transport = patch.transport(latest)
         sum_u = work["sum_u"] = work.get("sum_u", 0.0) + WEIGHT[index] * rates_u
@@ -37,6 +39,8 @@ class RungeKutta4:
             return StageResult(base + step * sum_u, sum_transport)
         return StageResult(base + step * FRACTION[index] * rates_u, FRACTION[index] * transport)
 
-    def repeat(self, patch: Patch, work: dict, start: State, latest: State, time: float, step: float, scale: float) -> StageResult:
+    def repeat(
+        self, patch: Patch, work: dict, start: State, latest: State, time: float, step: float, scale: float
+    ) -> StageResult:
         """Return the last result: an explicit step depends on no value that a repeat could improve."""
         return StageResult(start.u[: patch.ms] + step * work["sum_u"], work["sum_transport"])

@@ -40,14 +40,18 @@ class TwoStage:
     stages: int = 2
     order: int = 2
 
-    def stage(self, index: int, patch: Patch, work: dict, start: State, latest: State, time: float, step: float, scale: float) -> StageResult:
+    def stage(
+        self, index: int, patch: Patch, work: dict, start: State, latest: State, time: float, step: float, scale: float
+    ) -> StageResult:
         if index == 0:
             return self._predict(patch, work, start, time, step, scale)
         work["rates_of_prediction"] = patch.rates(latest, time + step)
         work["prediction"] = latest
         return self._correct(patch, work, start, latest, time, step)
 
-    def repeat(self, patch: Patch, work: dict, start: State, latest: State, time: float, step: float, scale: float) -> StageResult:
+    def repeat(
+        self, patch: Patch, work: dict, start: State, latest: State, time: float, step: float, scale: float
+    ) -> StageResult:
         mixed = beyond(patch, work["prediction"], latest)
         work["rates_of_prediction"] = patch.rates(mixed, time + step)
         return self._correct(patch, work, start, work["prediction"], time, step)
