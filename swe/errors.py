@@ -17,9 +17,19 @@ from __future__ import annotations
 
 
 class SweError(Exception):
-    """An expected failure; `exit_code` is what the command line returns."""
+    """An expected failure; `exit_code` is what the command line returns.
+
+    `everywhere` is True when all ranks raise the same error together; any other error ends the whole job at once,
+    because the remaining ranks would wait for ever.
+    """
 
     exit_code = 1
+    everywhere = False
+
+    def on_all_ranks(self) -> "SweError":
+        """Mark this error as raised by all ranks alike and return it."""
+        self.everywhere = True
+        return self
 
 
 class InputError(SweError):

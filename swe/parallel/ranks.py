@@ -34,8 +34,8 @@ def agreed(comm: MPI.Comm, doing: str):
         return
     kind, text = comm.bcast((type(error), str(error)) if comm.rank == failed else None, root=failed)
     if error is not None and comm.rank == failed:
-        raise error
-    raise _rebuilt(kind, text or f"rank {failed} failed while {doing}")
+        raise error.on_all_ranks()
+    raise _rebuilt(kind, text or f"rank {failed} failed while {doing}").on_all_ranks()
 
 
 def on_root(comm: MPI.Comm, doing: str, work, *arguments):

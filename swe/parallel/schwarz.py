@@ -129,7 +129,7 @@ class Basin:
             raise NumericalFailure(
                 f"the subdomains disagree by {report.mismatch:.3g} m after {report.repeats} repeats: allowed is "
                 f"{agreement.tolerance:.3g} m; use a wider overlap, a shorter step, or allow more repeats"
-            )
+            ).on_all_ranks()
         self.states = latest
         return report
 
@@ -180,7 +180,7 @@ class Basin:
             self.comm.Allreduce(local, values, op=MPI.MAX)
         failed, stopped, mismatch, scale, worst, change, speed, highest, deepest, dry = (float(v) for v in values)
         if failed:
-            raise NumericalFailure(self._first_reason(reasons))
+            raise NumericalFailure(self._first_reason(reasons)).on_all_ranks()
         if not np.all(np.isfinite(values[5:])):
             raise NumericalFailure(
                 f"level or current is no longer a finite number ({self._place_of_bad(latest)}); use a shorter step"
@@ -189,7 +189,7 @@ class Basin:
             raise NumericalFailure(
                 f"a face ran dry ({self._place_of_dry(latest)}): total depth must stay above 0 m because wetting and drying is not "
                 "computed; raise the least depth, shorten the step, or reduce the forcing"
-            )
+            ).on_all_ranks()
         return StepReport(mismatch, repeats, scale, change, worst, speed, highest, -deepest, -dry, bool(stopped))
 
     def _first_reason(self, reasons: list[str]) -> str:
