@@ -41,7 +41,7 @@ def distribute(comm: MPI.Comm, mesh: Mesh | None, count: int, overlap: int) -> S
     if count < comm.size:
         raise InputError(
             f"{count} subdomains for {comm.size} ranks: every rank needs at least one; use fewer ranks or more subdomains"
-        )
+        ).on_all_ranks()
     owner = on_root(comm, "cutting the mesh", lambda: partition(mesh, count))
     parts: list[Subdomain] = []
     if comm.rank == 0:

@@ -184,7 +184,7 @@ class Basin:
         if not np.all(np.isfinite(values[5:])):
             raise NumericalFailure(
                 f"level or current is no longer a finite number ({self._place_of_bad(latest)}); use a shorter step"
-            )
+            ).on_all_ranks()
         if -dry <= 0.0:
             raise NumericalFailure(
                 f"a face ran dry ({self._place_of_dry(latest)}): total depth must stay above 0 m because wetting and drying is not "
