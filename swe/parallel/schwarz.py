@@ -8,7 +8,7 @@
 
 The exchange is one message per neighbouring rank and stage; one reduction closes the step. It carries the mismatch, the
 failure flag, the stop request and the extremes, so that all ranks decide alike. An overlapping Schwarz method in the sense
-of Schwarz (1870) and of waveform relaxation (Gander 2006, Electron. Trans. Numer. Anal. 31, 228) with restricted
+of Schwarz (1870) and of waveform relaxation (Gander 2008, Electron. Trans. Numer. Anal. 31, 228) with restricted
 transmission: only owners' values are ever used by others.
 """
 
