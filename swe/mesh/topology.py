@@ -6,8 +6,8 @@
 
 Conventions (method.md, section 2; Thuburn et al. 2009; Ringler et al. 2010):
 
-    n  unit normal of an edge, from its first face to its second, along the line of the two centres; on a border
-       edge (one face only) n points out of that face
+    n  unit normal of an edge, from its first face to its second, along the line of the two centres; on the coast
+       (one face only, the first) n points out of that face
     t  = k x n; the two nodes of an edge are ordered so that t points from the first to the second
     l  length of an edge between its two nodes; d distance between its two face centres
     kite (v, i): the part of face i that is nearest node v: centre, foot on one edge, node, foot on the next;
@@ -15,14 +15,23 @@ Conventions (method.md, section 2; Thuburn et al. 2009; Ringler et al. 2010):
 
 Edges that separate two faces of the mesh come first; border edges follow. On the sphere lengths are great-circle
 lengths and areas spherical areas.
+
+A restricted mesh (restrict.py) never turns an edge round: first, second, n, t and the nodes keep the order they have in
+the whole mesh, so that u means the same everywhere. On a CUT edge the face that is missing is -1, in EITHER column:
+
+    edge_faces = (i, -1)   n points out of face i           edge_faces = (-1, j)   n points into face j
+
+The sign of n seen from a face is therefore +1 where the face stands in column 0 and -1 in column 1, always.
 """
 
 from __future__ import annotations
 
 import hashlib
-from dataclasses import dataclass, fields
+from dataclasses import dataclass, fields, replace
 
 import numpy as np
+
+from swe.errors import MeshError
 
 COAST = 0
 """Border kind: land beyond; the normal velocity is zero."""
@@ -52,7 +61,7 @@ class Mesh:
     face_area       (nf,)
     node_area       (nn,)   sum of the kites of wet faces of the WHOLE mesh
     kite_area       (nn, 3) kite of node v in face node_faces[v, k]; 0 where there is none
-    edge_faces      (ne, 2) first, second; second is -1 on border edges
+    edge_faces      (ne, 2) first, second; -1 where there is no face in this mesh: second on COAST and OPEN, either on CUT
     edge_nodes      (ne, 2)
     face_edges      (nf, m) counter-clockwise, -1 behind the last
     face_nodes      (nf, m) counter-clockwise; edge face_edges[i, k] runs from face_nodes[i, k] to face_nodes[i, k+1]
@@ -114,3 +123,23 @@ class Mesh:
                 digest.update(item.name.encode())
                 digest.update(np.ascontiguousarray(value).tobytes())
         return digest.hexdigest()
+
+
+def with_depth(mesh: Mesh, depth: np.ndarray) -> Mesh:
+    """Return the same mesh with another resting depth (nf,), m, positive down. Not collective."""
+    depth = np.array(np.broadcast_to(np.asarray(depth, dtype=float), (mesh.n_faces,)))
+    bad = ~np.isfinite(depth)
+    if bad.any():
+        raise MeshError(f"the depth of face {bad.argmax()} is {depth[bad.argmax()]}: give a finite number of metres everywhere")
+    return replace(mesh, depth=depth)
+
+
+def displacement(mesh: Mesh, start: np.ndarray, end: np.ndarray) -> np.ndarray:
+    """Return end - start, (..., 3) in m; on a periodic plane between the nearest images. Not collective."""
+    step = np.asarray(end) - np.asarray(start)
+    if mesh.period is None:
+        return step
+    sides = np.array([*mesh.period, 1.0])
+    turns = np.round(step / sides)
+    turns[..., 2] = 0
+    return step - turns * sides
