@@ -7,7 +7,7 @@
 
 The kinetic average is the one that balances the two-face mean of the thickness: sum_e l d h_e u^2/2 = sum_i A_i h_i K_i, so
 that pressure work and kinetic energy exchange exactly. On a coast face the edges on the coast contribute nothing.
-Source: Ringler et al. 2010, J. Comput. Phys. 229, 3065, sections 3.3 and 3.4.
+Source: Ringler et al. 2010, J. Comput. Phys. 229, 3065.
 """
 
 from __future__ import annotations

@@ -4,7 +4,7 @@
 
 F per unit length of edge. Border edges keep their columns: a transport prescribed there counts. Summed over all faces with
 A_i, inner edges cancel in pairs, so mass changes by what crosses the border only.
-Source: Ringler et al. 2010, J. Comput. Phys. 229, 3065, eq. 21; the theorem of Gauss on a polygon.
+Source: Ringler et al. 2010, J. Comput. Phys. 229, 3065; the theorem of Gauss on a polygon.
 """
 
 from __future__ import annotations

@@ -4,7 +4,7 @@
     (along p)_e = (p_v2 - p_v1) / l_e                 nodes at both ends of the edge; zero row on border edges
 
 `A div` and `l d grad` are negative adjoints; curl grad = 0 and div along = 0 hold exactly (telescoping sums).
-Source: Ringler et al. 2010, J. Comput. Phys. 229, 3065, eqs. 22 and 26.
+Source: Ringler et al. 2010, J. Comput. Phys. 229, 3065.
 """
 
 from __future__ import annotations

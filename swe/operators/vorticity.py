@@ -6,7 +6,7 @@
 
 Coast, free slip: the water exerts no tangential stress on land, so the vorticity of a coast node is zero: its row is
 empty. Columns of border edges are dropped (u = 0 on a coast; unknown where a restricted mesh is cut).
-Source: Ringler et al. 2010, J. Comput. Phys. 229, 3065, eq. 23.
+Source: Ringler et al. 2010, J. Comput. Phys. 229, 3065.
 """
 
 from __future__ import annotations

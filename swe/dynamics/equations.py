@@ -1,0 +1,109 @@
+"""Rates of change of level and velocity: the rotating shallow-water equations in vector-invariant form.
+
+    d eta/dt = -div F                                                            F = h_e u
+    d u/dt   = (q T F + T (q F))/2  -  grad( K + g eta )  +  tau_n/(rho h_e)  -  C_d |u| u/h_e  +  viscosity
+
+    h = D + eta   depth, m; h_e two-face mean           q = mean over two nodes of (f + zeta)_v / h_v, m-1 s-1
+    zeta = curl u, s-1                                  K = kinetic energy per mass, m2 s-2
+    T    tangential operator: T F is the transport along t
+
+The rotation term is the energy-conserving form of Ringler et al. 2010 (J. Comput. Phys. 229, 3065): with
+E = sum_e l d h_e u^2/2 + sum_i A_i g eta^2/2 the two terms T q and q T do no work because W is antisymmetric, and
+grad(K + g eta) against div F cancel by summation by parts. So dE/dt = 0 at round-off without wind and friction.
+
+Coast, free slip: u = 0 on border edges, zeta = 0 at coast nodes, h_v from the wet faces. The rates of border edges are zero.
+Depth must be positive on all faces; nothing here checks it.
+"""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+from functools import cached_property
+
+import numpy as np
+from scipy import sparse
+
+from swe.dynamics.drag import drag
+from swe.dynamics.forcing import Forcing
+from swe.dynamics.forcing.wind import wind_acceleration
+from swe.dynamics.physics import Physics
+from swe.dynamics.viscosity import viscosity
+from swe.mesh.topology import Mesh
+from swe.operators import Operators
+
+
+@dataclass(frozen=True, eq=False)
+class Water:
+    """Everything that the rates depend on, on one (restricted) mesh.
+
+    coriolis_node   (nn,) f, s-1
+    forcing         the stresses that act on the surface; they add up
+    """
+
+    mesh: Mesh
+    operators: Operators
+    physics: Physics
+    coriolis_node: np.ndarray
+    forcing: tuple[Forcing, ...] = ()
+
+    def rates(self, eta: np.ndarray, u: np.ndarray, time: float) -> tuple[np.ndarray, np.ndarray]:
+        """Return (d eta/dt (nf,) m s-1, du/dt (ne,) m s-2) at model time `time` (s). Not collective.
+
+        Rates are those of the whole mesh on every face, and every edge between faces, that keep all their neighbours.
+        """
+        op, physics = self.operators, self.physics
+        h_node, h_edge = self.thickness(eta)
+        flow = h_edge * u
+        zeta = op.curl @ u
+        rate = rotation(op, self.potential_vorticity(zeta, h_node), flow)
+        rate -= bernoulli(op, physics.gravity, eta, u)
+        if self.forcing:
+            rate += wind_acceleration(self.stress(time), physics.density, h_edge)
+        if physics.bottom_drag:
+            rate += drag(physics.bottom_drag, u, op.tangential @ u, h_edge)
+        if physics.lateral_viscosity:
+            rate += viscosity(op, physics.lateral_viscosity, u, zeta)
+        rate[self.mesh.n_inner :] = 0.0
+        return continuity(op, flow), rate
+
+    def transport(self, eta: np.ndarray, u: np.ndarray) -> np.ndarray:
+        """Return F = h_e u, (ne,), m2 s-1. Not collective."""
+        return (self.operators.face_to_edge @ (self.mesh.depth + eta)) * u
+
+    def thickness(self, eta: np.ndarray) -> tuple[np.ndarray, np.ndarray]:
+        """Return the depth of the water at nodes (nn,) and edges (ne,), m. Not collective."""
+        both = self._means @ (self.mesh.depth + eta)
+        return both[: self.mesh.n_nodes], both[self.mesh.n_nodes :]
+
+    def potential_vorticity(self, zeta: np.ndarray, h_node: np.ndarray) -> np.ndarray:
+        """Return q at edges, (ne,), m-1 s-1. Not collective."""
+        return self.operators.node_to_edge @ ((self.coriolis_node + zeta) / h_node)
+
+    def stress(self, time: float) -> np.ndarray:
+        """Return the sum of all surface stresses along n, (ne,), Pa. Not collective."""
+        return sum((forcing.stress(time) for forcing in self.forcing), np.zeros(self.mesh.n_edges))
+
+    @cached_property
+    def _means(self) -> sparse.csr_array:
+        return sparse.vstack((self.operators.face_to_node, self.operators.face_to_edge), format="csr")
+
+
+def continuity(op: Operators, flow: np.ndarray) -> np.ndarray:
+    """Return -div F on faces, (nf,), m s-1. Not collective."""
+    rate = op.div @ flow
+    return np.negative(rate, out=rate)
+
+
+def rotation(op: Operators, q: np.ndarray, flow: np.ndarray) -> np.ndarray:
+    """Return (q T F + T (q F))/2 on edges, (ne,), m s-2. Not collective."""
+    rate = op.tangential @ (q * flow)
+    rate += q * (op.tangential @ flow)
+    rate *= 0.5
+    return rate
+
+
+def bernoulli(op: Operators, gravity: float, eta: np.ndarray, u: np.ndarray) -> np.ndarray:
+    """Return grad( K + g eta ) on edges, (ne,), m s-2. Not collective."""
+    head = op.kinetic @ (u * u)
+    head += gravity * eta
+    return op.grad @ head

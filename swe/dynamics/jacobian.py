@@ -1,0 +1,206 @@
+"""The Jacobian of the rates about the current state, all terms, on the first mf faces and ms edges.
+
+With F = h_e u, c_ee' = (q_e + q_e') T_ee' / 2, and M for means (M_e faces to edges, M_v faces to nodes, N nodes to edges):
+
+    d(d eta/dt)  = -div( h_e du + u M_e d eta )
+    d(du/dt)     = c ( h_e du + u M_e d eta )  +  G ( curl du - q_v M_v d eta ) / h_v  -  grad( K' du + g d eta )
+                   + (a + b T) du + s M_e d eta + V du
+    G_ev         = ( diag(T F) N + T diag(F) N )_ev / 2,        q_v = (f + zeta)_v / h_v,   K' du = 2 kinetic (u du)
+
+a, b, s: derivatives of bottom drag and wind stress by u_n, u_t and h_e (`drag`); V: `viscosity`. On a spot of the mesh every
+entry is a sum of few products, so the pattern is found once, and the data are
+
+    data = constant + P z
+
+with a constant sparse P and the vector z of all c h, c u, G / h_v, G q_v / h_v, a, b, s, u, h_e: one sparse product per refill.
+
+Rim: the transport through edges beyond the first ms counts as given, so that the level rows are exactly -div transport(x) on
+those edges; only faces on the rim feel the difference. The velocity rows have every dependence on the unknowns.
+
+Energy weights (g A_i, l_e d_e h_e), h_e current depth, as in `wave`. Not skew: flow, friction and the change of q are in it.
+"""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+from functools import cached_property
+
+import numpy as np
+from scipy import sparse
+
+from swe.dynamics.bounds import GravityBound
+from swe.dynamics.drag import drag_derivatives
+from swe.dynamics.equations import Water
+from swe.dynamics.viscosity import viscosity_matrix
+from swe.operators.products import Assembly, Places, Refill, terms
+from swe.operators.sparse import compressed
+
+
+@dataclass(frozen=True, eq=False)
+class CurrentOperator:
+    """The Jacobian at one state; satisfies the contract of the exponential room.
+
+    matrix      J, (size, size) CSR, unscaled: S = diag(weights) J diag(1/weights) is applied, not stored
+    weights     (size,) square roots of (g A_i, l_e d_e h_e)
+    depth_edge  (ms,) h_e, m; flow_edge (ms,) u, m s-1
+    """
+
+    factory: "JacobianFactory"
+    matrix: sparse.csr_array
+    weights: np.ndarray
+    depth_edge: np.ndarray
+    flow_edge: np.ndarray
+    skew: bool = False
+
+    @property
+    def size(self) -> int:
+        return self.weights.size
+
+    def product(self, y: np.ndarray) -> np.ndarray:
+        """Return S y, (size,). Not collective."""
+        return self.weights * (self.matrix @ (y / self.weights))
+
+    def apply(self, x: np.ndarray) -> np.ndarray:
+        """Return J x, (size,), in unscaled variables (m s-1, m s-2). Not collective."""
+        return self.matrix @ x
+
+    def transport(self, x: np.ndarray) -> np.ndarray:
+        """Return h_e du + u M_e d eta, (ms,), m2 s-1: the level rows of J x are -div of it. Not collective."""
+        mf = self.factory.mf
+        return self.depth_edge * x[mf:] + self.flow_edge * (self.factory.mean @ x[:mf])
+
+    @cached_property
+    def radius(self) -> float:
+        """Upper bound of the spectral radius, s-1: the local bound of gravity waves plus (|rest|_1 |rest|_inf)^(1/2)."""
+        return self.factory.radius(self)
+
+
+class JacobianFactory:
+    """The pattern of the Jacobian of one solve part, and the map that refills it. Not collective."""
+
+    def __init__(self, water: Water, mf: int, ms: int):
+        op, mesh = water.operators, water.mesh
+        self.water, self.mf, self.ms = water, mf, ms
+        self.mean = op.face_to_edge[:ms, :mf]
+        self._bound = GravityBound(mesh, mf, ms, water.physics.gravity)
+        self._turn = op.tangential[:ms]
+        self._turn_at = Places.of(self._turn)
+        self._corner_at, self._corner = _corners(water, ms, self._turn_at)
+        self._refill = self._assemble()
+        self._waves = self._gravity_places()
+        self._shape_weights = mesh.edge_length[:ms] * mesh.edge_distance[:ms]
+
+    def at(self, eta: np.ndarray, u: np.ndarray, time: float) -> CurrentOperator:
+        """Return the Jacobian at (eta (nf,), u (ne,)) and model time `time` (s); later calls leave it alone. Not collective."""
+        water, op, ms = self.water, self.water.operators, self.ms
+        h_node, h_edge = water.thickness(eta)
+        q_node = (water.coriolis_node + op.curl @ u) / h_node
+        q = op.node_to_edge @ q_node
+        flow = h_edge * u
+        edge, other, turn = self._turn_at.rows, self._turn_at.columns, self._turn.data
+        turn_q = (0.5 * turn) * (q[edge] + q[other])
+        corner = self._corner @ np.concatenate((self._turn @ flow, turn * flow[other]))
+        corner /= h_node[self._corner_at.columns]
+        pieces = {"turn h": turn_q * h_edge[other], "turn u": turn_q * u[other], "corner": corner}
+        pieces |= {"corner q": corner * q_node[self._corner_at.columns], "u": u, "h": h_edge}
+        if "by h" in self._refill.names:
+            pieces |= self._friction(u, h_edge[:ms], time)
+        area = water.physics.gravity * water.mesh.face_area[: self.mf]
+        weights = np.sqrt(np.concatenate((area, self._shape_weights * h_edge[:ms])))
+        return CurrentOperator(self, self._refill(pieces), weights, h_edge[:ms].copy(), u[:ms].copy())
+
+    def radius(self, operator: CurrentOperator) -> float:
+        """Return the bound of the spectral radius of `operator`, s-1. Not collective."""
+        rows, columns = self._refill.places.rows, self._refill.places.columns
+        level, head, slope = self._waves
+        rest = operator.matrix.data.copy()
+        rest[level] = 0.0
+        rest[head] -= slope
+        scaled = np.abs(rest) * operator.weights[rows] / operator.weights[columns]
+        norms = [np.bincount(index, scaled, operator.size).max() for index in (rows, columns)]
+        return self._bound(operator.depth_edge) + float(np.sqrt(norms[0] * norms[1]))
+
+    def _friction(self, u: np.ndarray, h_edge: np.ndarray, time: float) -> dict[str, np.ndarray]:
+        """Derivatives of bottom drag and wind stress by u_n, u_t and h_e, (ms,) each."""
+        ms, physics = self.ms, self.water.physics
+        by_u, by_t, by_h = drag_derivatives(physics.bottom_drag, u[:ms], self._turn @ u, h_edge)
+        by_h -= self.water.stress(time)[:ms] / (physics.density * h_edge**2)
+        return {"by u": by_u, "by t": by_t, "by h": by_h}
+
+    def _assemble(self) -> Refill:
+        water, mf, ms, mesh = self.water, self.mf, self.ms, self.water.mesh
+        lengths = {"turn h": self._turn_at.size, "turn u": self._turn_at.size, "corner": self._corner_at.size}
+        lengths |= {"corner q": self._corner_at.size, "u": mesh.n_edges, "h": mesh.n_edges}
+        rubs = bool(water.physics.bottom_drag) or bool(water.forcing)
+        if rubs:
+            lengths |= {"by u": ms, "by t": ms, "by h": ms}
+        assembly = Assembly((mf + ms, mf + ms), lengths)
+        self._level_rows(assembly)
+        self._rotation_rows(assembly)
+        self._head_rows(assembly)
+        if rubs:
+            self._friction_rows(assembly)
+        return assembly.finish()
+
+    def _level_rows(self, assembly: Assembly) -> None:
+        """-div( h_e du + u M_e d eta ) on the first ms edges."""
+        out = self.water.operators.div[: self.mf, : self.ms]
+        at = Places.of(out)
+        assembly.add(at.rows, self.mf + at.columns, "h", at.columns, -out.data)
+        face, column, source, mean = terms(at, self.mean)
+        assembly.add(face, column, "u", at.columns[source], -out.data[source] * mean)
+
+    def _rotation_rows(self, assembly: Assembly) -> None:
+        """c ( h_e du + u M_e d eta ) + G ( curl du - q_v M_v d eta ) / h_v."""
+        op, mf, at = self.water.operators, self.mf, self._turn_at
+        assembly.add(mf + at.rows, mf + at.columns, "turn h", np.arange(at.size), 1.0)
+        edge, face, source, mean = terms(at, op.face_to_edge)
+        use = face < mf
+        assembly.add(mf + edge[use], face[use], "turn u", source[use], mean[use])
+        edge, other, source, curl = terms(self._corner_at, op.curl)
+        assembly.add(mf + edge, mf + other, "corner", source, curl)
+        edge, face, source, mean = terms(self._corner_at, op.face_to_node)
+        use = face < mf
+        assembly.add(mf + edge[use], face[use], "corner q", source[use], -mean[use])
+
+    def _head_rows(self, assembly: Assembly) -> None:
+        """-grad( K' du + g d eta ) + V du."""
+        op, mf, ms, physics = self.water.operators, self.mf, self.ms, self.water.physics
+        slope = op.grad[:ms, :mf]
+        at = Places.of(slope)
+        assembly.add(mf + at.rows, at.columns, None, None, -physics.gravity * slope.data)
+        lift = (op.grad[:ms] @ op.kinetic).tocsr()
+        at = Places.of(lift)
+        assembly.add(mf + at.rows, mf + at.columns, "u", at.columns, -2.0 * lift.data)
+        if physics.lateral_viscosity:
+            viscous = viscosity_matrix(op, physics.lateral_viscosity)[:ms, :ms]
+            at = Places.of(viscous)
+            assembly.add(mf + at.rows, mf + at.columns, None, None, viscous.data)
+
+    def _friction_rows(self, assembly: Assembly) -> None:
+        """(a + b T) du + s M_e d eta."""
+        mf, edge, at = self.mf, np.arange(self.ms), self._turn_at
+        assembly.add(mf + edge, mf + edge, "by u", edge, 1.0)
+        assembly.add(mf + at.rows, mf + at.columns, "by t", at.rows, self._turn.data)
+        at = Places.of(self.mean)
+        assembly.add(mf + at.rows, at.columns, "by h", at.rows, self.mean.data)
+
+    def _gravity_places(self) -> tuple[np.ndarray, np.ndarray, np.ndarray]:
+        """Indices in the data of the gravity-wave part: level rows by velocity, velocity rows by level with their values."""
+        places, mf = self._refill.places, self.mf
+        level = np.flatnonzero((places.rows < mf) & (places.columns >= mf))
+        slope = self.water.operators.grad[: self.ms, :mf]
+        at = Places.of(slope)
+        return level, places.find(mf + at.rows, at.columns), -self.water.physics.gravity * slope.data
+
+
+def _corners(water: Water, ms: int, turn_at: Places) -> tuple[Places, sparse.csr_array]:
+    """Places of G (ms, nn), and the map of its data from (T F (ms,), data of T times F): half of N on either."""
+    half = water.operators.node_to_edge
+    own = Places.of(half[:ms])
+    edge, node, source, share = terms(turn_at, half)
+    places = Places.union((ms, half.shape[1]), (own.rows, own.columns), (edge, node))
+    rows = np.concatenate((places.find(own.rows, own.columns), places.find(edge, node)))
+    columns = np.concatenate((own.rows, ms + source))
+    values = 0.5 * np.concatenate((half[:ms].data, share))
+    return places, compressed(rows, columns, values, (places.size, ms + turn_at.size))

@@ -1,0 +1,166 @@
+"""The wave operator: the equations linearised about water at rest.
+
+    L = [ 0         -div D_e                ]      unknowns: level of the first mf faces, velocity of the first ms edges
+        [ -g grad   (q0 T D_e + T q0 D_e)/2 ]      q0 = mean over two nodes of f / D_v
+
+With the energy weights M = diag(g A_i, l_e d_e D_e) the scaled matrix S = M^(1/2) L M^(-1/2) has the entries
+
+    face i, edge e     -s_ie (g/A_i)^(1/2) b_e                      b_e = (l_e D_e / d_e)^(1/2)
+    edge e, face i     +s_ie (g/A_i)^(1/2) b_e
+    edge e, edge e'    -W_ee' (q0_e + q0_e')/2 b_e b_e'
+
+and is skew bit by bit, for variable depth, spacing and f: linear energy |M^(1/2) x|^2 / 2 is conserved.
+D is the resting depth, or the depth at a given level (`refresh`): still skew, only the scalings change. Values beyond the
+first mf faces and ms edges are taken as zero. Source: method.md, section 4; W: Thuburn et al. 2009, J. Comput. Phys. 228, 8321.
+"""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+
+import numpy as np
+from scipy import sparse
+
+from swe.dynamics.bounds import GravityBound
+from swe.dynamics.equations import Water
+from swe.errors import NumericalFailure
+from swe.operators.sparse import sides
+
+
+@dataclass(frozen=True, eq=False)
+class Pattern:
+    """What does not change with depth: where the entries of S stand and their constant factors.
+
+    gravity, gravity_factor, gravity_edge             positions in the data; -+s (g/A)^(1/2); edge whose b multiplies
+    rotation, rotation_factor, row_edge, column_edge  positions in the data; -W/2; the two edges
+    row_start                                         first of `rotation` in each row that has any
+    """
+
+    indptr: np.ndarray
+    indices: np.ndarray
+    gravity: np.ndarray
+    gravity_factor: np.ndarray
+    gravity_edge: np.ndarray
+    rotation: np.ndarray
+    rotation_factor: np.ndarray
+    row_edge: np.ndarray
+    column_edge: np.ndarray
+    row_start: np.ndarray
+
+
+@dataclass(eq=False)
+class WaveOperator:
+    """L of one solve part; satisfies the contract of the exponential room.
+
+    size        mf + ms
+    weights     (size,) square roots of (g A_i, l_e d_e D_e)
+    skew        True: S^T = -S bit by bit
+    radius      upper bound of the spectral radius, s-1: the sharp local bound of gravity waves (swe.dynamics.bounds) plus the
+                largest absolute row sum of the rotation block
+    matrix      S, (size, size) CSR
+    depth_edge  (ms,) D_e, m
+    """
+
+    water: Water
+    mf: int
+    ms: int
+    pattern: Pattern
+    bound: GravityBound
+    weights: np.ndarray
+    depth_edge: np.ndarray
+    matrix: sparse.csr_array
+    radius: float = 0.0
+    skew: bool = True
+
+    @property
+    def size(self) -> int:
+        return self.mf + self.ms
+
+    def product(self, y: np.ndarray) -> np.ndarray:
+        """Return S y, (size,). Not collective."""
+        return self.matrix @ y
+
+    def apply(self, x: np.ndarray) -> np.ndarray:
+        """Return L x, (size,), in unscaled variables (m s-1, m s-2). Not collective."""
+        return (self.matrix @ (self.weights * x)) / self.weights
+
+    def transport(self, x: np.ndarray) -> np.ndarray:
+        """Return D_e u of the velocities in x, (ms,), m2 s-1: the level rows of L x are -div of it. Not collective."""
+        return self.depth_edge * x[self.mf :]
+
+    def refresh(self, eta: np.ndarray) -> None:
+        """Put the depth at level `eta` (nf,) in the place of the resting depth, in place. Not collective.
+
+        Raises NumericalFailure where that depth is not positive.
+        """
+        mesh, pattern = self.water.mesh, self.pattern
+        h_node, h_edge = self.water.thickness(eta)
+        self.depth_edge[:] = _wet(mesh, h_edge[: self.ms])
+        shape = mesh.edge_length[: self.ms] * self.depth_edge
+        np.sqrt(shape * mesh.edge_distance[: self.ms], out=self.weights[self.mf :])
+        b = np.sqrt(shape / mesh.edge_distance[: self.ms])
+        self.matrix.data[pattern.gravity] = pattern.gravity_factor * b[pattern.gravity_edge]
+        self.radius = self.bound(self.depth_edge)
+        if pattern.rotation.size:
+            q = self.water.potential_vorticity(0.0, h_node)[: self.ms]
+            row, column = pattern.row_edge, pattern.column_edge
+            entries = pattern.rotation_factor * (q[row] + q[column]) * (b[row] * b[column])
+            self.matrix.data[pattern.rotation] = entries
+            self.radius += float(np.add.reduceat(np.abs(entries), pattern.row_start).max())
+
+
+def wave_operator(water: Water, mf: int, ms: int, rotation: bool, eta: np.ndarray | None = None) -> WaveOperator:
+    """Return the wave operator of the first `mf` faces and `ms` edges. Not collective.
+
+    rotation  keep the Coriolis block (it is dropped anyway where f = 0 everywhere)
+    eta       (nf,) level whose depth is the reference, m; None: the resting depth
+    """
+    mesh = water.mesh
+    pattern = _pattern(water, mf, ms, rotation and bool(np.any(water.coriolis_node)))
+    matrix = sparse.csr_array((np.zeros(pattern.indices.size), pattern.indices, pattern.indptr), shape=(mf + ms, mf + ms))
+    weights = np.empty(mf + ms)
+    weights[:mf] = np.sqrt(water.physics.gravity * mesh.face_area[:mf])
+    bound = GravityBound(mesh, mf, ms, water.physics.gravity)
+    operator = WaveOperator(water, mf, ms, pattern, bound, weights, np.empty(ms), matrix)
+    operator.refresh(np.zeros(mesh.n_faces) if eta is None else eta)
+    return operator
+
+
+def _pattern(water: Water, mf: int, ms: int, rotation: bool) -> Pattern:
+    edge, face, sign = (part for part in sides(water.mesh))
+    use = edge < ms
+    edge, face, sign = edge[use], face[use], sign[use]
+    factor = sign * np.sqrt(water.physics.gravity / water.mesh.face_area[face])
+    turn = water.operators.weights[:ms, :ms].tocoo() if rotation else sparse.coo_array((ms, ms))
+    rows = np.concatenate((face, mf + edge, mf + turn.row))
+    columns = np.concatenate((mf + edge, face, mf + turn.col))
+    order = np.lexsort((columns, rows))
+    place = np.empty(order.size, dtype=np.intp)
+    place[order] = np.arange(order.size)
+    n = edge.size
+    by_row = np.argsort(place[2 * n :])
+    row_edge = turn.row[by_row].astype(np.intp)
+    return Pattern(
+        indptr=np.concatenate(([0], np.cumsum(np.bincount(rows, minlength=mf + ms)))).astype(np.int32),
+        indices=columns[order].astype(np.int32),
+        gravity=place[: 2 * n],
+        gravity_factor=np.concatenate((-factor, factor)),
+        gravity_edge=np.concatenate((edge, edge)),
+        rotation=place[2 * n :][by_row],
+        rotation_factor=-0.5 * turn.data[by_row],
+        row_edge=row_edge,
+        column_edge=turn.col[by_row].astype(np.intp),
+        row_start=np.flatnonzero(np.diff(row_edge, prepend=-1)),
+    )
+
+
+def _wet(mesh, depth_edge: np.ndarray) -> np.ndarray:
+    """Return `depth_edge` if all of it is positive."""
+    if depth_edge.size and not depth_edge.min() > 0.0:
+        worst = int(np.argmin(np.where(np.isnan(depth_edge), -np.inf, depth_edge)))
+        x, y, z = mesh.edge_xyz[worst]
+        raise NumericalFailure(
+            f"wave operator: depth {depth_edge[worst]:.4g} m at edge {mesh.edge_id[worst]} ({x:.0f}, {y:.0f}, {z:.0f} m), "
+            "must be > 0; deepen the shallowest faces or shorten the step"
+        )
+    return depth_edge
