@@ -9,6 +9,8 @@
                triangulation: its accuracy is relative to the size of the basin, not of the planet.
                Points all round: the convex hull in space, whose facets are the spherical Delaunay triangles. A projection
                would have to send one point to infinity and make small triangles there from numbers without digits.
+               Facets that have the centre of the sphere outside are dropped: their circle is larger than a hemisphere,
+               so the points leave that side open, as a plane is open beyond its outermost points.
 
 Triangles run counter-clockwise (seen from outside).
 Sources: Brown 1979, Inf. Process. Lett. 9, 223 (hulls and Voronoi diagrams; from memory); Barber, Dobkin & Huhdanpaa 1996,
@@ -128,11 +130,12 @@ def _hull(xyz: np.ndarray) -> np.ndarray:
 
 
 def _outward(corners: np.ndarray, xyz: np.ndarray) -> np.ndarray:
-    """Turn each hull facet so that it runs counter-clockwise seen from outside the hull."""
+    """Hull facets counter-clockwise seen from outside the hull, without those that have the origin outside."""
     a, b, c = (xyz[corners[:, k]] for k in range(3))
-    outside = dot(np.cross(b - a, c - a), a - xyz.mean(axis=0)) < 0
+    pole = np.cross(b - a, c - a)
+    outside = dot(pole, a - xyz.mean(axis=0)) < 0
     corners[outside] = corners[outside][:, ::-1]
-    return corners
+    return corners[np.where(outside, -1, 1) * dot(pole, a) > 0]
 
 
 def _refuse_doubles(pairs: np.ndarray) -> None:

@@ -2,14 +2,14 @@
 
     faces   in the order given
     edges   inner ones (both faces held) first, by (larger local face, smaller local face): the edges among the first k
-            faces are a prefix, for every k; then the border by (local face, edge of the parent)
-    nodes   by their local faces (smallest, next, largest), then by node of the parent: the nodes of the first k faces
-            are a prefix, for every k
+            faces are a prefix, for every k; then the border by (local face, edge of the whole mesh)
+    nodes   by their local faces (smallest, next, largest), then by node of the whole mesh: the nodes of the first k
+            faces are a prefix, for every k
     kinds   an edge that separated two faces of the parent and now has one is CUT; others keep the kind they had
 
 No edge is turned round (topology.py) and nothing is computed anew: every length, area and direction is the parent's, bit for
 bit. node_area and node_coast speak of the whole mesh; node_faces is -1 and kite_area 0 where a face is missing.
-The restriction to all faces in their order is the mesh itself.
+So the restriction to all faces in their order is the mesh itself, and a part of a part is a part of the whole.
 """
 
 from __future__ import annotations
@@ -32,9 +32,9 @@ def restrict(mesh: Mesh, faces: np.ndarray) -> Mesh:
     faces = _checked(faces, mesh.n_faces)
     local_face = _inverse(faces, mesh.n_faces)
     edge_faces = local_face[mesh.edge_faces]
-    edges, n_inner = _edges(edge_faces)
+    edges, n_inner = _edges(edge_faces, mesh.edge_id)
     node_faces = local_face[mesh.node_faces]
-    nodes = _nodes(node_faces)
+    nodes = _nodes(node_faces, mesh.node_id)
     local_edge, local_node = _inverse(edges, mesh.n_edges), _inverse(nodes, mesh.n_nodes)
     kind = np.full(mesh.n_edges, CUT, dtype=np.int8)
     kind[mesh.n_inner :] = mesh.border_kind
@@ -85,19 +85,19 @@ def _inverse(chosen: np.ndarray, size: int) -> np.ndarray:
     return table
 
 
-def _edges(edge_faces: np.ndarray) -> tuple[np.ndarray, int]:
+def _edges(edge_faces: np.ndarray, ids: np.ndarray) -> tuple[np.ndarray, int]:
     """Edges of the parent with a face held, in local order, and how many have two."""
     low, high = edge_faces.min(axis=1), edge_faces.max(axis=1)
     inner = np.flatnonzero(low >= 0)
     inner = inner[np.lexsort((low[inner], high[inner]))]
     border = np.flatnonzero((low < 0) & (high >= 0))
-    border = border[np.argsort(high[border], kind="stable")]
+    border = border[np.lexsort((ids[border], high[border]))]
     return np.concatenate([inner, border]), inner.size
 
 
-def _nodes(node_faces: np.ndarray) -> np.ndarray:
+def _nodes(node_faces: np.ndarray, ids: np.ndarray) -> np.ndarray:
     """Nodes of the parent with a face held, in local order."""
     held = np.flatnonzero((node_faces >= 0).any(axis=1))
     faces = node_faces[held]
     ranked = np.sort(np.where(faces >= 0, faces, NONE), axis=1)
-    return held[np.lexsort((ranked[:, 2], ranked[:, 1], ranked[:, 0]))]
+    return held[np.lexsort((ids[held], ranked[:, 2], ranked[:, 1], ranked[:, 0]))]
