@@ -116,8 +116,8 @@ def _check_indices(mesh: Mesh) -> None:
     for name, shape in shapes.items():
         if getattr(mesh, name).shape != shape:
             raise MeshError(f"mesh: {name} has shape {getattr(mesh, name).shape}; needed is {shape}; {TURNED}")
-    limits = {"face_edges": (-1, ne), "face_nodes": (-1, nn), "node_faces": (-1, nf), "edge_faces": (-1, nf), "edge_nodes": (0, nn)}
-    for name, (low, high) in limits.items():
+    limits = {"face_edges": (-1, ne), "face_nodes": (-1, nn), "node_faces": (-1, nf), "edge_faces": (-1, nf)}
+    for name, (low, high) in {**limits, "edge_nodes": (0, nn)}.items():
         index = getattr(mesh, name)
         if index.min() < low or index.max() >= high:
             raise MeshError(f"mesh: {name} runs from {index.min()} to {index.max()}; allowed is {low} to {high - 1}; {TURNED}")
@@ -164,8 +164,9 @@ def _check_rounds(mesh: Mesh) -> None:
     here, after = mesh.face_nodes[face, slot], mesh.face_nodes[face, (slot + 1) % count[face]]
     first = mesh.edge_faces[edge, 0] == face
     faces_right = first | (mesh.edge_faces[edge, 1] == face)
-    nodes_right = np.where(first[:, None], mesh.edge_nodes[edge], mesh.edge_nodes[edge][:, ::-1]) == np.column_stack([here, after])
-    wrong = ~(faces_right & nodes_right.all(axis=1) & np.any(mesh.node_faces[here] == face[:, None], axis=1))
+    start, end = mesh.edge_nodes[edge].T
+    nodes_right = (np.where(first, start, end) == here) & (np.where(first, end, start) == after)
+    wrong = ~(faces_right & nodes_right & np.any(mesh.node_faces[here] == face[:, None], axis=1))
     _refuse(mesh, "the number of edges out of their round", "", np.bincount(face, wrong), 0, np.arange(mesh.n_faces), TURNED)
     expected = (mesh.edge_faces >= 0).sum(axis=1)
     missing = np.abs(np.bincount(edge, minlength=mesh.n_edges) - expected)
@@ -195,7 +196,8 @@ def _check_directions(mesh: Mesh) -> None:
     line = displacement(mesh, mesh.node_xyz[mesh.edge_nodes[:, 0]], mesh.node_xyz[mesh.edge_nodes[:, 1]])
     lean = np.abs(dot(line, n)) / mesh.edge_length
     allowed = ROUND_OFF + PLACE * _extent(mesh) / mesh.edge_length
-    _refuse(mesh, "the cosine between n and an edge", "", lean, allowed, face, "edge and line of centres must cross at right angles: " + TURNED)
+    do = "edge and line of centres must cross at right angles: " + TURNED
+    _refuse(mesh, "the cosine between n and an edge", "", lean, allowed, face, do)
     first, second = mesh.edge_faces[: mesh.n_inner].T
     across = displacement(mesh, mesh.face_xyz[first], mesh.face_xyz[second])
     off = np.linalg.norm(across / np.linalg.norm(across, axis=1, keepdims=True) - n[: mesh.n_inner], axis=1)
@@ -212,7 +214,8 @@ def _check_lengths(mesh: Mesh) -> None:
     first, second = mesh.face_xyz[mesh.edge_faces[: mesh.n_inner]].transpose(1, 0, 2)
     d = mesh.edge_distance[: mesh.n_inner]
     error = np.abs(geometry.distance(first, first + displacement(mesh, first, second)) - d)
-    _refuse(mesh, "the difference of d and the distance of two centres", " m", error, ROUND_OFF * d + PLACE * _extent(mesh), face, TURNED)
+    allowed = ROUND_OFF * d + PLACE * _extent(mesh)
+    _refuse(mesh, "the difference of d and the distance of two centres", " m", error, allowed, face, TURNED)
 
 
 def _check_areas(mesh: Mesh) -> None:

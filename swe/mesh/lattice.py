@@ -1,7 +1,7 @@
 """Lattices of hexagons and of the bisected icosahedron.
 
-    periodic   nx cells in each of ny rows, points at ( (i + (j mod 2)/2) s, j s sqrt(3)/2 ): regular hexagons of area sqrt(3)/2 s^2,
-               l = s/sqrt(3), d = s
+    periodic   nx cells in each of ny rows, points at ( (i + (j mod 2)/2) s, j s sqrt(3)/2 ): regular hexagons of
+               area sqrt(3)/2 s^2, l = s/sqrt(3), d = s
     in a rectangle, with coast all round (`hexagons_in`)
     in a polygon, with a coast of whole hexagons (`hexagons_within`): a staircase, so its error is of first order
     on the whole sphere, from the bisected icosahedron (`icosahedral`)
@@ -12,7 +12,6 @@ Hexagons of the plane are numbered row by row, which tests can count; the sphere
 from __future__ import annotations
 
 import numpy as np
-
 from shapely import contains_xy
 
 from swe.errors import MeshError

@@ -61,20 +61,25 @@ class Quality:
 
     def lines(self) -> list[str]:
         """Return the table as text, one line a number. Not collective."""
+        angle, even = f"{self.angle_smallest:.2f} degrees", f"{self.evenness_smallest:.4f}"
+        offset, growth, travel = f"{self.offset_largest:.4f}", f"{self.growth_largest:.4f}", f"{self.travel_smallest:.5g} s"
         rows = [
             ("faces, edges, nodes", f"{self.faces} {self.edges} {self.nodes}", ""),
             ("separate waters", f"{self.waters}", ""),
             ("area", f"{self.area / 1e6:.6g} km2", ""),
-            ("spacing smallest, median, largest", f"{_three(self.spacing_smallest, self.spacing_median, self.spacing_largest)} m", ""),
-            ("smallest angle of a triangle of centres", f"{self.angle_smallest:.2f} degrees", _at(self.angle_face, self.angle_place)),
-            ("l/d smallest, largest", f"{self.ratio_smallest:.4f} {self.ratio_largest:.4f}", ""),
-            ("shortest over longest edge of a face", f"{self.evenness_smallest:.4f}", _at(self.evenness_face, self.evenness_place)),
+            ("spacing smallest", f"{self.spacing_smallest:.5g} m", ""),
+            ("spacing median", f"{self.spacing_median:.5g} m", ""),
+            ("spacing largest", f"{self.spacing_largest:.5g} m", ""),
+            ("smallest angle of a triangle of centres", angle, _at(self.angle_face, self.angle_place)),
+            ("l/d smallest", f"{self.ratio_smallest:.4f}", ""),
+            ("l/d largest", f"{self.ratio_largest:.4f}", ""),
+            ("shortest over longest edge of a face", even, _at(self.evenness_face, self.evenness_place)),
             ("centre to centroid over sqrt(area), median", f"{self.offset_median:.4f}", ""),
-            ("centre to centroid over sqrt(area), largest", f"{self.offset_largest:.4f}", _at(self.offset_face, self.offset_place)),
-            ("largest ratio of neighbouring areas", f"{self.growth_largest:.4f}", _at(self.growth_face, self.growth_place)),
-            ("shortest travel time d/sqrt(gD)", f"{self.travel_smallest:.5g} s", _at(self.travel_face, self.travel_place)),
+            ("centre to centroid over sqrt(area), largest", offset, _at(self.offset_face, self.offset_place)),
+            ("largest ratio of neighbouring areas", growth, _at(self.growth_face, self.growth_place)),
+            ("shortest travel time d/sqrt(gD)", travel, _at(self.travel_face, self.travel_place)),
         ]
-        return [f"{name:<45}{value:>36}  {where}".rstrip() for name, value, where in rows]
+        return [f"{name:<45}{value:>22}  {where}".rstrip() for name, value, where in rows]
 
 
 def quality(mesh: Mesh, gravity: float) -> Quality:
@@ -104,10 +109,6 @@ def quality(mesh: Mesh, gravity: float) -> Quality:
         *_worst(mesh, growth, first, largest=True),
         *_worst(mesh, travel, deeper, largest=False),
     )  # fmt: skip
-
-
-def _three(*numbers: float) -> str:
-    return " ".join(f"{number:.5g}" for number in numbers)
 
 
 def _at(face: int, where: str) -> str:
