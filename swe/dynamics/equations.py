@@ -55,7 +55,7 @@ class Water:
         h_node, h_edge = self.thickness(eta)
         flow = h_edge * u
         zeta = op.curl @ u
-        rate = rotation(op, self.potential_vorticity(zeta, h_node), flow)
+        rate = rotation(op, self.potential_vorticity(self.coriolis_node + zeta, h_node), flow)
         rate -= bernoulli(op, physics.gravity, eta, u)
         if self.forcing:
             rate += wind_acceleration(self.stress(time), physics.density, h_edge)
@@ -75,9 +75,9 @@ class Water:
         both = self._means @ (self.mesh.depth + eta)
         return both[: self.mesh.n_nodes], both[self.mesh.n_nodes :]
 
-    def potential_vorticity(self, zeta: np.ndarray, h_node: np.ndarray) -> np.ndarray:
-        """Return q at edges, (ne,), m-1 s-1. Not collective."""
-        return self.operators.node_to_edge @ ((self.coriolis_node + zeta) / h_node)
+    def potential_vorticity(self, absolute: np.ndarray, h_node: np.ndarray) -> np.ndarray:
+        """Return q at edges, (ne,), m-1 s-1, of the absolute vorticity f + zeta (nn,) and the depth at nodes. Not collective."""
+        return self.operators.node_to_edge @ (absolute / h_node)
 
     def stress(self, time: float) -> np.ndarray:
         """Return the sum of all surface stresses along n, (ne,), Pa. Not collective."""

@@ -7,12 +7,13 @@ With F = h_e u, c_ee' = (q_e + q_e') T_ee' / 2, and M for means (M_e faces to ed
                    + (a + b T) du + s M_e d eta + V du
     G_ev         = ( diag(T F) N + T diag(F) N )_ev / 2,        q_v = (f + zeta)_v / h_v,   K' du = 2 kinetic (u du)
 
-a, b, s: derivatives of bottom drag and wind stress by u_n, u_t and h_e (`drag`); V: `viscosity`. On a spot of the mesh every
-entry is a sum of few products, so the pattern is found once, and the data are
+a, b, s: derivatives of bottom drag and wind stress by u_n, u_t and h_e (`drag`); V: `viscosity`. Every entry is a sum
+of few products of known vectors, so the pattern is found once, and the data are
 
-    data = constant + P z
+    data = P z
 
-with a constant sparse P and the vector z of all c h, c u, G / h_v, G q_v / h_v, a, b, s, u, h_e: one sparse product per refill.
+with a constant sparse P and the vector z of all c u, G / h_v, G q_v / h_v, u, h_e, s and one, of what has the places of T
+(c h, K', b T, V) and of what is diagonal (K', a, V): one sparse product per refill.
 
 Rim: the transport through edges beyond the first ms counts as given, so that the level rows are exactly -div transport(x) on
 those edges; only faces on the rim feel the difference. The velocity rows have every dependence on the unknowns.
@@ -85,29 +86,36 @@ class JacobianFactory:
         self._bound = GravityBound(mesh, mf, ms, water.physics.gravity)
         self._turn = op.tangential[:ms]
         self._turn_at = Places.of(self._turn)
-        self._corner_at, self._corner = _corners(water, ms, self._turn_at)
+        self._row_count = np.diff(self._turn.indptr)
+        self._lift, self._lift_own = _split(-2.0 * (op.grad @ op.kinetic), self._turn_at, mesh.n_inner)
+        viscous = viscosity_matrix(op, water.physics.lateral_viscosity)
+        self._viscous, self._viscous_own = _split(viscous, self._turn_at, mesh.n_inner)
+        self._corner_at, self._corner = _corners(water, self._turn_at)
         self._refill = self._assemble()
+        self._refill.segment["one"][:] = 1.0
         self._waves = self._gravity_places()
         self._shape_weights = mesh.edge_length[:ms] * mesh.edge_distance[:ms]
 
     def at(self, eta: np.ndarray, u: np.ndarray, time: float) -> CurrentOperator:
         """Return the Jacobian at (eta (nf,), u (ne,)) and model time `time` (s); later calls leave it alone. Not collective."""
-        water, op, ms = self.water, self.water.operators, self.ms
+        water, op, ms, z = self.water, self.water.operators, self.ms, self._refill.segment
         h_node, h_edge = water.thickness(eta)
         q_node = (water.coriolis_node + op.curl @ u) / h_node
-        q = op.node_to_edge @ q_node
         flow = h_edge * u
-        edge, other, turn = self._turn_at.rows, self._turn_at.columns, self._turn.data
-        turn_q = (0.5 * turn) * (q[edge] + q[other])
-        corner = self._corner @ np.concatenate((self._turn @ flow, turn * flow[other]))
-        corner /= h_node[self._corner_at.columns]
-        pieces = {"turn h": turn_q * h_edge[other], "turn u": turn_q * u[other], "corner": corner}
-        pieces |= {"corner q": corner * q_node[self._corner_at.columns], "u": u, "h": h_edge}
-        if "by h" in self._refill.names:
-            pieces |= self._friction(u, h_edge[:ms], time)
+        self._turning(op.node_to_edge @ q_node, h_edge, u)
+        z["corner"][:] = self._corner @ np.concatenate((self._turn @ flow, self._turn.data * flow[self._turn_at.columns]))
+        z["corner"] /= h_node[self._corner_at.columns]
+        np.multiply(z["corner"], q_node[self._corner_at.columns], out=z["corner q"])
+        z["u"][:], z["h"][:] = u, h_edge
+        np.multiply(u[:ms], self._lift_own, out=z["own"])
+        if water.physics.lateral_viscosity:
+            z["turn"] += self._viscous
+            z["own"] += self._viscous_own
+        if "by h" in z:
+            self._friction(u, h_edge[:ms], time)
         area = water.physics.gravity * water.mesh.face_area[: self.mf]
         weights = np.sqrt(np.concatenate((area, self._shape_weights * h_edge[:ms])))
-        return CurrentOperator(self, self._refill(pieces), weights, h_edge[:ms].copy(), u[:ms].copy())
+        return CurrentOperator(self, self._refill.matrix(), weights, h_edge[:ms].copy(), u[:ms].copy())
 
     def radius(self, operator: CurrentOperator) -> float:
         """Return the bound of the spectral radius of `operator`, s-1. Not collective."""
@@ -120,26 +128,40 @@ class JacobianFactory:
         norms = [np.bincount(index, scaled, operator.size).max() for index in (rows, columns)]
         return self._bound(operator.depth_edge) + float(np.sqrt(norms[0] * norms[1]))
 
-    def _friction(self, u: np.ndarray, h_edge: np.ndarray, time: float) -> dict[str, np.ndarray]:
-        """Derivatives of bottom drag and wind stress by u_n, u_t and h_e, (ms,) each."""
-        ms, physics = self.ms, self.water.physics
-        by_u, by_t, by_h = drag_derivatives(physics.bottom_drag, u[:ms], self._turn @ u, h_edge)
-        by_h -= self.water.stress(time)[:ms] / (physics.density * h_edge**2)
-        return {"by u": by_u, "by t": by_t, "by h": by_h}
+    def _turning(self, q: np.ndarray, h_edge: np.ndarray, u: np.ndarray) -> None:
+        """Fill c u and, where T has its places, c h - 2 grad kinetic u."""
+        z, other = self._refill.segment, self._turn_at.columns
+        c = np.repeat(q[: self.ms], self._row_count)
+        c += q[other]
+        c *= self._turn.data
+        c *= 0.5
+        u_other = u[other]
+        np.multiply(c, u_other, out=z["turn u"])
+        c *= h_edge[other]
+        u_other *= self._lift
+        np.add(c, u_other, out=z["turn"])
+
+    def _friction(self, u: np.ndarray, h_edge: np.ndarray, time: float) -> None:
+        """Add the derivatives of bottom drag and wind stress by u_n and u_t; fill those by h_e."""
+        ms, physics, z = self.ms, self.water.physics, self._refill.segment
+        by_u, by_t, z["by h"][:] = drag_derivatives(physics.bottom_drag, u[:ms], self._turn @ u, h_edge)
+        z["own"] += by_u
+        z["turn"] += np.repeat(by_t, self._row_count) * self._turn.data
+        z["by h"] -= self.water.stress(time)[:ms] / (physics.density * h_edge**2)
 
     def _assemble(self) -> Refill:
         water, mf, ms, mesh = self.water, self.mf, self.ms, self.water.mesh
-        lengths = {"turn h": self._turn_at.size, "turn u": self._turn_at.size, "corner": self._corner_at.size}
-        lengths |= {"corner q": self._corner_at.size, "u": mesh.n_edges, "h": mesh.n_edges}
-        rubs = bool(water.physics.bottom_drag) or bool(water.forcing)
-        if rubs:
-            lengths |= {"by u": ms, "by t": ms, "by h": ms}
+        turn, corner = self._turn_at.size, self._corner_at.size
+        lengths = {"turn": turn, "turn u": turn, "corner": corner, "corner q": corner, "own": ms, "one": 1}
+        lengths |= {"u": mesh.n_edges, "h": mesh.n_edges}
+        if water.physics.bottom_drag or water.forcing:
+            lengths["by h"] = ms
         assembly = Assembly((mf + ms, mf + ms), lengths)
         self._level_rows(assembly)
-        self._rotation_rows(assembly)
-        self._head_rows(assembly)
-        if rubs:
-            self._friction_rows(assembly)
+        self._velocity_rows(assembly)
+        if "by h" in lengths:
+            at = Places.of(self.mean)
+            assembly.add(mf + at.rows, at.columns, "by h", at.rows, self.mean.data)
         return assembly.finish()
 
     def _level_rows(self, assembly: Assembly) -> None:
@@ -150,40 +172,20 @@ class JacobianFactory:
         face, column, source, mean = terms(at, self.mean)
         assembly.add(face, column, "u", at.columns[source], -out.data[source] * mean)
 
-    def _rotation_rows(self, assembly: Assembly) -> None:
-        """c ( h_e du + u M_e d eta ) + G ( curl du - q_v M_v d eta ) / h_v."""
-        op, mf, at = self.water.operators, self.mf, self._turn_at
-        assembly.add(mf + at.rows, mf + at.columns, "turn h", np.arange(at.size), 1.0)
-        edge, face, source, mean = terms(at, op.face_to_edge)
-        use = face < mf
-        assembly.add(mf + edge[use], face[use], "turn u", source[use], mean[use])
+    def _velocity_rows(self, assembly: Assembly) -> None:
+        """c u M_e d eta + G ( curl du - q_v M_v d eta ) / h_v - grad( g d eta ), and what has the places of T or is diagonal."""
+        op, mf, ms, at = self.water.operators, self.mf, self.ms, self._turn_at
+        assembly.add(mf + at.rows, mf + at.columns, "turn", np.arange(at.size), 1.0)
+        assembly.add(mf + np.arange(ms), mf + np.arange(ms), "own", np.arange(ms), 1.0)
+        edge, face, source, mean = terms(at, op.face_to_edge[:, :mf])
+        assembly.add(mf + edge, face, "turn u", source, mean)
         edge, other, source, curl = terms(self._corner_at, op.curl)
         assembly.add(mf + edge, mf + other, "corner", source, curl)
-        edge, face, source, mean = terms(self._corner_at, op.face_to_node)
-        use = face < mf
-        assembly.add(mf + edge[use], face[use], "corner q", source[use], -mean[use])
-
-    def _head_rows(self, assembly: Assembly) -> None:
-        """-grad( K' du + g d eta ) + V du."""
-        op, mf, ms, physics = self.water.operators, self.mf, self.ms, self.water.physics
+        edge, face, source, mean = terms(self._corner_at, op.face_to_node[:, :mf])
+        assembly.add(mf + edge, face, "corner q", source, -mean)
         slope = op.grad[:ms, :mf]
         at = Places.of(slope)
-        assembly.add(mf + at.rows, at.columns, None, None, -physics.gravity * slope.data)
-        lift = (op.grad[:ms] @ op.kinetic).tocsr()
-        at = Places.of(lift)
-        assembly.add(mf + at.rows, mf + at.columns, "u", at.columns, -2.0 * lift.data)
-        if physics.lateral_viscosity:
-            viscous = viscosity_matrix(op, physics.lateral_viscosity)[:ms, :ms]
-            at = Places.of(viscous)
-            assembly.add(mf + at.rows, mf + at.columns, None, None, viscous.data)
-
-    def _friction_rows(self, assembly: Assembly) -> None:
-        """(a + b T) du + s M_e d eta."""
-        mf, edge, at = self.mf, np.arange(self.ms), self._turn_at
-        assembly.add(mf + edge, mf + edge, "by u", edge, 1.0)
-        assembly.add(mf + at.rows, mf + at.columns, "by t", at.rows, self._turn.data)
-        at = Places.of(self.mean)
-        assembly.add(mf + at.rows, at.columns, "by h", at.rows, self.mean.data)
+        assembly.add(mf + at.rows, at.columns, "one", 0, -self.water.physics.gravity * slope.data)
 
     def _gravity_places(self) -> tuple[np.ndarray, np.ndarray, np.ndarray]:
         """Indices in the data of the gravity-wave part: level rows by velocity, velocity rows by level with their values."""
@@ -194,9 +196,21 @@ class JacobianFactory:
         return level, places.find(mf + at.rows, at.columns), -self.water.physics.gravity * slope.data
 
 
-def _corners(water: Water, ms: int, turn_at: Places) -> tuple[Places, sparse.csr_array]:
+def _split(matrix: sparse.sparray, turn_at: Places, n_inner: int) -> tuple[np.ndarray, np.ndarray]:
+    """Entries of an edge-by-edge matrix at the places of T, and its diagonal (ms,). It has none elsewhere but on borders."""
+    ms = turn_at.shape[0]
+    part = matrix.tocsr()[:ms]
+    part.sort_indices()
+    at = Places.of(part)
+    beside = (at.columns < n_inner) & (at.columns != at.rows)
+    values = np.zeros(turn_at.size)
+    values[turn_at.find(at.rows[beside], at.columns[beside])] = part.data[beside]
+    return values, part.diagonal()
+
+
+def _corners(water: Water, turn_at: Places) -> tuple[Places, sparse.csr_array]:
     """Places of G (ms, nn), and the map of its data from (T F (ms,), data of T times F): half of N on either."""
-    half = water.operators.node_to_edge
+    ms, half = turn_at.shape[0], water.operators.node_to_edge
     own = Places.of(half[:ms])
     edge, node, source, share = terms(turn_at, half)
     places = Places.union((ms, half.shape[1]), (own.rows, own.columns), (edge, node))

@@ -54,7 +54,7 @@ class BetaPlane:
 
     def at_nodes(self, mesh: Mesh) -> np.ndarray:
         if mesh.spherical or mesh.period is not None:
-            raise InputError("coriolis: a beta-plane on a spherical or periodic mesh, allowed on plane meshes; use the sphere law or a constant f")
+            raise InputError("coriolis: a beta-plane needs a plane mesh that is not periodic; use the sphere law or a constant f")
         return self.f0 + self.beta * (mesh.node_xyz[:, 1] - self.y0)
 
 
@@ -67,7 +67,7 @@ class Sphere:
 
     def at_nodes(self, mesh: Mesh) -> np.ndarray:
         if not mesh.spherical:
-            raise InputError("coriolis: the law of the sphere on a plane mesh, allowed on spherical meshes; use a constant f or a beta-plane")
+            raise InputError("coriolis: the sphere law needs a spherical mesh, this one is plane; use a constant f or a beta-plane")
         axis = np.array([-math.sin(self.tilt), 0.0, math.cos(self.tilt)])
         return 2.0 * self.rate * (mesh.node_xyz @ axis) / np.linalg.norm(mesh.node_xyz, axis=1)
 

@@ -7,6 +7,10 @@ Coast, free slip: zeta = 0 at coast nodes, so that land exerts no tangential str
     sum_e l d u du/dt = -nu ( sum_i A_i delta_i^2 + sum_v A_v zeta_v^2 ) <= 0
 
 without a boundary term; a plug flow along a straight coast is not damped at all, a shear flow only inside.
+
+Edge by edge the two parts are not consistent: on regular hexagons the vorticities of the two kinds of node have opposite
+errors of first order, whose difference over l does not vanish (a third of the Laplacian, root mean square, measured). The
+error averages out over the edges of a face: vectors at face centres converge with second order, and so does the damping.
 Source: Ringler & Randall 2002, Mon. Wea. Rev. 130, 1397 (vector Laplacian on a C-grid of hexagons, from memory).
 """
 

@@ -32,8 +32,8 @@ class Pattern:
     """What does not change with depth: where the entries of S stand and their constant factors.
 
     gravity, gravity_factor, gravity_edge             positions in the data; -+s (g/A)^(1/2); edge whose b multiplies
-    rotation, rotation_factor, row_edge, column_edge  positions in the data; -W/2; the two edges
-    row_start                                         first of `rotation` in each row that has any
+    rotation, rotation_factor, column_edge            positions in the data, row after row; -W/2; edge of the column
+    row_count                                         (ms,) number of `rotation` entries of each edge
     """
 
     indptr: np.ndarray
@@ -43,9 +43,8 @@ class Pattern:
     gravity_edge: np.ndarray
     rotation: np.ndarray
     rotation_factor: np.ndarray
-    row_edge: np.ndarray
     column_edge: np.ndarray
-    row_start: np.ndarray
+    row_count: np.ndarray
 
 
 @dataclass(eq=False)
@@ -55,8 +54,6 @@ class WaveOperator:
     size        mf + ms
     weights     (size,) square roots of (g A_i, l_e d_e D_e)
     skew        True: S^T = -S bit by bit
-    radius      upper bound of the spectral radius, s-1: the sharp local bound of gravity waves (swe.dynamics.bounds) plus the
-                largest absolute row sum of the rotation block
     matrix      S, (size, size) CSR
     depth_edge  (ms,) D_e, m
     """
@@ -69,8 +66,8 @@ class WaveOperator:
     weights: np.ndarray
     depth_edge: np.ndarray
     matrix: sparse.csr_array
-    radius: float = 0.0
     skew: bool = True
+    _radius: float | None = None
 
     @property
     def size(self) -> int:
@@ -89,7 +86,7 @@ class WaveOperator:
         return self.depth_edge * x[self.mf :]
 
     def refresh(self, eta: np.ndarray) -> None:
-        """Put the depth at level `eta` (nf,) in the place of the resting depth, in place. Not collective.
+        """Put the depth at level `eta` (nf,) in the place of the reference depth, in place. Not collective.
 
         Raises NumericalFailure where that depth is not positive.
         """
@@ -100,13 +97,26 @@ class WaveOperator:
         np.sqrt(shape * mesh.edge_distance[: self.ms], out=self.weights[self.mf :])
         b = np.sqrt(shape / mesh.edge_distance[: self.ms])
         self.matrix.data[pattern.gravity] = pattern.gravity_factor * b[pattern.gravity_edge]
-        self.radius = self.bound(self.depth_edge)
         if pattern.rotation.size:
-            q = self.water.potential_vorticity(0.0, h_node)[: self.ms]
-            row, column = pattern.row_edge, pattern.column_edge
-            entries = pattern.rotation_factor * (q[row] + q[column]) * (b[row] * b[column])
+            q = self.water.potential_vorticity(self.water.coriolis_node, h_node)[: self.ms]
+            entries = np.repeat(q, pattern.row_count) + q[pattern.column_edge]
+            entries *= np.repeat(b, pattern.row_count) * b[pattern.column_edge]
+            entries *= pattern.rotation_factor
             self.matrix.data[pattern.rotation] = entries
-            self.radius += float(np.add.reduceat(np.abs(entries), pattern.row_start).max())
+        self._radius = None
+
+    @property
+    def radius(self) -> float:
+        """Upper bound of the spectral radius, s-1. Not collective.
+
+        The sharp local bound of gravity waves (swe.dynamics.bounds) plus the largest absolute row sum of the rotation block.
+        """
+        if self._radius is None:
+            self._radius = self.bound(self.depth_edge)
+            if self.pattern.rotation.size:
+                rows = np.repeat(np.arange(self.ms), self.pattern.row_count)
+                self._radius += float(np.bincount(rows, np.abs(self.matrix.data[self.pattern.rotation])).max())
+        return self._radius
 
 
 def wave_operator(water: Water, mf: int, ms: int, rotation: bool, eta: np.ndarray | None = None) -> WaveOperator:
@@ -127,7 +137,7 @@ def wave_operator(water: Water, mf: int, ms: int, rotation: bool, eta: np.ndarra
 
 
 def _pattern(water: Water, mf: int, ms: int, rotation: bool) -> Pattern:
-    edge, face, sign = (part for part in sides(water.mesh))
+    edge, face, sign = sides(water.mesh)
     use = edge < ms
     edge, face, sign = edge[use], face[use], sign[use]
     factor = sign * np.sqrt(water.physics.gravity / water.mesh.face_area[face])
@@ -139,7 +149,6 @@ def _pattern(water: Water, mf: int, ms: int, rotation: bool) -> Pattern:
     place[order] = np.arange(order.size)
     n = edge.size
     by_row = np.argsort(place[2 * n :])
-    row_edge = turn.row[by_row].astype(np.intp)
     return Pattern(
         indptr=np.concatenate(([0], np.cumsum(np.bincount(rows, minlength=mf + ms)))).astype(np.int32),
         indices=columns[order].astype(np.int32),
@@ -148,9 +157,8 @@ def _pattern(water: Water, mf: int, ms: int, rotation: bool) -> Pattern:
         gravity_edge=np.concatenate((edge, edge)),
         rotation=place[2 * n :][by_row],
         rotation_factor=-0.5 * turn.data[by_row],
-        row_edge=row_edge,
         column_edge=turn.col[by_row].astype(np.intp),
-        row_start=np.flatnonzero(np.diff(row_edge, prepend=-1)),
+        row_count=np.bincount(turn.row, minlength=ms),
     )
 
 

@@ -3,9 +3,10 @@
 A product C = A B with fixed B has the entries C_ij = sum_k A_ik B_kj: linear in the data of A. So the data of a sum of such
 products, with several A whose data z change and several fixed B, are
 
-    data = constant + P z
+    data = P z
 
-with one constant sparse P. It is built once; each refill is then one sparse product.
+with one constant sparse P (a constant part is a segment of z that holds a one). P is built once; each refill is then one
+sparse product.
 """
 
 from __future__ import annotations
@@ -44,7 +45,12 @@ class Places:
 
     def find(self, rows: np.ndarray, columns: np.ndarray) -> np.ndarray:
         """Return the index in the data of each (row, column), all of which must be there. Not collective."""
-        return np.searchsorted(self.rows * self.shape[1] + self.columns, np.asarray(rows, np.int64) * self.shape[1] + columns)
+        keys = self.rows * self.shape[1] + self.columns
+        wanted = np.asarray(rows, np.int64) * self.shape[1] + columns
+        index = np.searchsorted(keys, wanted)
+        if np.any(index == keys.size) or np.any(keys[index] != wanted):
+            raise ValueError("a sparse pattern has no place for one of the entries asked for")
+        return index
 
 
 def terms(a: Places, b: sparse.csr_array) -> tuple[np.ndarray, np.ndarray, np.ndarray, np.ndarray]:
@@ -58,20 +64,18 @@ def terms(a: Places, b: sparse.csr_array) -> tuple[np.ndarray, np.ndarray, np.nd
 
 @dataclass(frozen=True, eq=False)
 class Refill:
-    """A CSR pattern with the map P (entries, length of z) and the constant part of its data."""
+    """A CSR pattern with the map P (entries, length of z), and z in named segments."""
 
     places: Places
     indptr: np.ndarray
     indices: np.ndarray
     map: sparse.csr_array
-    constant: np.ndarray
-    names: tuple[str, ...]
+    z: np.ndarray
+    segment: dict[str, np.ndarray]
 
-    def __call__(self, pieces: dict[str, np.ndarray]) -> sparse.csr_array:
-        """Return the matrix for the vectors z, one for each name. Not collective."""
-        data = self.map @ np.concatenate([pieces[name] for name in self.names])
-        data += self.constant
-        return sparse.csr_array((data, self.indices, self.indptr), shape=self.places.shape)
+    def matrix(self) -> sparse.csr_array:
+        """Return the matrix for the present content of the segments (views of z, to be filled in place). Not collective."""
+        return sparse.csr_array((self.map @ self.z, self.indices, self.indptr), shape=self.places.shape)
 
 
 class Assembly:
@@ -84,20 +88,19 @@ class Assembly:
         self._total = int(ends[-1])
         self._parts: list[tuple[np.ndarray, ...]] = []
 
-    def add(self, rows, columns, name: str | None, index, value) -> None:
-        """Add value * z[name][index] at (rows, columns); name None: the constant `value`. Terms outside the shape are dropped."""
-        column = -1 if name is None else index + self._offset[name]
-        rows, columns, column, value = np.broadcast_arrays(rows, columns, column, np.asarray(value, dtype=float))
+    def add(self, rows, columns, name: str, index, value) -> None:
+        """Add value * z[name][index] at (rows, columns), which must be inside the shape or are dropped. Not collective."""
+        rows, columns, index, value = np.broadcast_arrays(rows, columns, index, np.asarray(value, dtype=float))
         use = (rows < self._shape[0]) & (columns < self._shape[1])
-        self._parts.append(tuple(part[use] for part in (rows, columns, column, value)))
+        self._parts.append(tuple(part[use] for part in (rows, columns, index + self._offset[name], value)))
 
     def finish(self) -> Refill:
-        """Return the pattern and the map. Not collective."""
+        """Return the pattern and the map; all of z is zero. Not collective."""
         rows, columns, z, value = (np.concatenate(part) for part in zip(*self._parts, strict=True))
         keys, place = np.unique(rows.astype(np.int64) * self._shape[1] + columns, return_inverse=True)
         places = Places(keys // self._shape[1], keys % self._shape[1], self._shape)
-        fixed = z < 0
-        constant = np.bincount(place[fixed], value[fixed], keys.size)
-        linear = compressed(place[~fixed], z[~fixed], value[~fixed], (keys.size, self._total))
+        linear = compressed(place, z, value, (keys.size, self._total))
         indptr = np.searchsorted(places.rows, np.arange(self._shape[0] + 1)).astype(np.int32)
-        return Refill(places, indptr, places.columns.astype(np.int32), linear, constant, tuple(self._lengths))
+        memory = np.zeros(self._total)
+        segment = {name: memory[start : start + self._lengths[name]] for name, start in self._offset.items()}
+        return Refill(places, indptr, places.columns.astype(np.int32), linear, memory, segment)

@@ -14,6 +14,7 @@ from __future__ import annotations
 import numpy as np
 from scipy import sparse
 
+from swe.mesh.topology import displacement
 from swe.operators.sparse import compressed, sides
 
 
@@ -34,9 +35,7 @@ def axes(mesh, xyz) -> tuple[np.ndarray, np.ndarray]:
 def reconstruction(mesh) -> tuple[sparse.csr_array, sparse.csr_array]:
     """Return (R1, R2), each (nf, ne), dimensionless: components of the velocity at face centres. Not collective."""
     edge, face, sign = sides(mesh)
-    arm = mesh.edge_xyz[edge] - mesh.face_xyz[face]
-    if mesh.period is not None:  # nearest image
-        arm[:, :2] -= np.round(arm[:, :2] / mesh.period) * mesh.period
+    arm = displacement(mesh, mesh.face_xyz[face], mesh.edge_xyz[edge])
     scale = sign * mesh.edge_length[edge] / mesh.face_area[face]
     shape = (mesh.n_faces, mesh.n_edges)
     return tuple(compressed(face, edge, scale * (arm * axis[face]).sum(axis=1), shape) for axis in axes(mesh, mesh.face_xyz))

@@ -16,12 +16,6 @@ def compressed(rows, columns, values, shape) -> sparse.csr_array:
     return matrix
 
 
-def diagonal(values) -> sparse.dia_array:
-    """Return the diagonal matrix of `values`. Not collective."""
-    values = np.asarray(values, dtype=float)
-    return sparse.dia_array((values[None, :], [0]), shape=(values.size, values.size))
-
-
 def sides(mesh):
     """Return (edge, face, sign) of every edge-face pair: sign +1 where n points out of the face. Not collective.
 

@@ -18,7 +18,7 @@ from itertools import combinations
 import numpy as np
 from scipy import sparse
 
-from swe.operators.sparse import compressed, diagonal
+from swe.operators.sparse import compressed
 
 
 def kite_fractions(mesh) -> np.ndarray:
@@ -49,4 +49,6 @@ def antisymmetric_weights(mesh) -> sparse.csr_array:
 
 def tangential(mesh, weights: sparse.csr_array) -> sparse.csr_array:
     """Return T, (ne, ne), dimensionless: u_t = T u. Not collective."""
-    return (diagonal(-1.0 / mesh.edge_distance) @ weights @ diagonal(mesh.edge_length)).tocsr()
+    rows = np.repeat(np.arange(mesh.n_edges), np.diff(weights.indptr))
+    values = -weights.data * mesh.edge_length[weights.indices] / mesh.edge_distance[rows]
+    return sparse.csr_array((values, weights.indices, weights.indptr), shape=weights.shape)
