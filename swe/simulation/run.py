@@ -1,0 +1,289 @@
+"""The run: from a case to a finished result, step by step; stop, failure and resume.
+
+    build mesh -> hand out -> start or resume -> steps -> summary
+
+After every step the ranks know alike whether someone asked to stop (it rides in the step's own reduction). A stop and a
+numerical failure both leave a checkpoint of the last good state behind.
+"""
+
+from __future__ import annotations
+
+import time as clock
+from collections.abc import Callable
+from dataclasses import dataclass, field
+from pathlib import Path
+
+from mpi4py import MPI
+
+from swe.errors import InputError, NumericalFailure, Stopped
+from swe.mesh.topology import Mesh
+from swe.output import checkpoint
+from swe.output.folder import ResultFolder
+from swe.output.stations import Sampling, Station, sample
+from swe.output.summary import versions, write_summary
+from swe.parallel.ranks import StopRequest, on_root, peak_memory
+from swe.case.schema import place_of
+from swe.simulation.meshing import mesh_for
+from swe.simulation.progress import Progress, Reading
+from swe.simulation.progress import clock as model_clock
+from swe.simulation.recorder import Recorder
+from swe.simulation.setup import Setup, prepare
+from swe.simulation.start import begin, put
+
+STATION_REACH = 1.0
+"""A station may lie this many largest spacings from the nearest face centre before it counts as on land."""
+
+
+@dataclass
+class Counts:
+    """What a run has spent, this session and those before it."""
+
+    products: int = 0
+    repeats: int = 0
+    messages: int = 0
+    bytes_sent: int = 0
+    largest_mismatch: float = 0.0
+    largest_error: float = 0.0
+    wall_seconds: float = 0.0
+
+    def as_dict(self) -> dict:
+        return dict(vars(self))
+
+
+@dataclass
+class Run:
+    """One run on its ranks. Methods are collective."""
+
+    comm: MPI.Comm
+    case: object
+    setup: Setup
+    recorder: Recorder
+    physics_key: str
+    quiet: bool
+    say: Callable[[str], None]
+    number: int = 0
+    scale: float = 0.0
+    spent: Counts = field(default_factory=Counts)
+    began: float = field(default_factory=clock.monotonic)
+
+    @property
+    def time(self) -> float:
+        return self.number * self.setup.plan.step
+
+    def start(self, mesh: Mesh | None) -> None:
+        """Begin from the case's [start]."""
+        begin(self.setup, self.case, mesh)
+        self.recorder.open(None)
+        self.scale = self.setup.basin.scale(0.0, self.setup.plan.step)
+        self.recorder.begin()
+
+    def resume(self, saved: checkpoint.Checkpoint | None) -> None:
+        """Take up where a checkpoint (rank 0) left the run."""
+        meta = self.comm.bcast(saved.meta if saved else None, root=0)
+        step = self.setup.plan.step
+        self.number = round(meta["time"] / step)
+        if abs(self.time - meta["time"]) > 1e-6 * step or self.number > self.setup.plan.steps:
+            raise InputError(
+                f"the checkpoint holds {meta['time']:g} s, not a whole number of steps of {step:g} s within the run: "
+                "choose a step that divides it and a duration that is not shorter"
+            ).on_all_ranks()
+        self.scale = meta["scale"]
+        self.spent = Counts(**meta["spent"])
+        arrays = saved.arrays if saved else None
+        put(self.setup, arrays["eta"] if arrays else None, arrays["u"] if arrays else None)
+        self.recorder.restore(arrays, meta)
+        self.recorder.open(meta["time"])
+        self.say(f"resumed at {model_clock(meta['time'])}, step {self.number}")
+
+    def steps(self) -> None:
+        """Step to the end. Raises Stopped or NumericalFailure with the state saved."""
+        basin, plan = self.setup.basin, self.setup.plan
+        progress = Progress(self.time, plan.steps * plan.step) if self.comm.rank == 0 and not self.quiet else None
+        with StopRequest() as request:
+            while self.number < plan.steps:
+                try:
+                    report = basin.advance(
+                        self.setup.stepper, self.setup.agreement, self.time, plan.step, self.scale, request.asked
+                    )
+                except NumericalFailure as failure:
+                    raise self._failed(failure) from None
+                self.number += 1
+                self.scale = report.scale
+                self.spent.repeats += report.repeats
+                self.spent.largest_mismatch = max(self.spent.largest_mismatch, report.mismatch)
+                self.spent.largest_error = max(self.spent.largest_error, report.error)
+                with basin.phases("output"):
+                    self.recorder.see(self.number, self.time, report, {"products": self.spent.products, "repeats": self.spent.repeats})
+                    if self.recorder.checkpoint_due(self.number) and self.number < plan.steps:
+                        self.save()
+                if progress and (progress.due() or self.number == plan.steps):
+                    progress.show(self._reading(report), last=self.number == plan.steps)
+                if report.stop and self.number < plan.steps:
+                    where = self.comm.bcast(self.save(), root=0)
+                    raise Stopped(
+                        f"stopped on request after step {self.number} at {model_clock(self.time)}; state saved in {where}; "
+                        "continue with --resume"
+                    ).on_all_ranks()
+
+    def _reading(self, report) -> Reading:
+        row = self.recorder.row
+        energy = row.get("kinetic_energy", 0.0) + row.get("potential_energy", 0.0)
+        level = max(report.highest, -report.lowest)
+        return Reading(self.time, row.get("mass_drift", 0.0), energy, report.mismatch, self.spent.repeats, report.speed, level)
+
+    def _failed(self, failure: NumericalFailure) -> NumericalFailure:
+        """Save the last good state and say when and where the run failed."""
+        where = self.comm.bcast(self.save(), root=0)
+        return NumericalFailure(
+            f"step {self.number + 1} at {model_clock(self.time)} ({self.time:g} s): {failure}; "
+            f"the last good state, step {self.number}, is saved in {where}"
+        ).on_all_ranks()
+
+    def save(self) -> str:
+        """Write a checkpoint of the present state; return its path on rank 0."""
+        meta = {
+            "mesh_checksum": self.setup.share.checksum,
+            "physics_key": self.physics_key,
+            "scale": self.scale,
+            "spent": self.totals().as_dict(),
+        }
+        return self.recorder.save(self.number, self.time, meta)
+
+    def totals(self) -> Counts:
+        """Return what was spent in all sessions so far, summed over the ranks."""
+        halo, now = self.setup.basin.halo, self.spent
+        products, messages, sent = self.comm.allreduce(
+            _Sum((int(self.setup.basin.products.sum()), halo.messages, halo.bytes_sent)), op=MPI.SUM
+        )
+        return Counts(
+            now.products + products, now.repeats, now.messages + messages, now.bytes_sent + sent, now.largest_mismatch,
+            now.largest_error, now.wall_seconds + clock.monotonic() - self.began,
+        )  # fmt: skip
+
+    def summary(self, finished: bool) -> dict:
+        """Return the summary of the run (the same on all ranks but for rank 0's versions)."""
+        case, plan, spent = self.case, self.setup.plan, self.totals()
+        seconds = self.setup.basin.phases.seconds
+        return {
+            "case": case.name,
+            "title": case.title,
+            "finished": finished,
+            "ranks": self.comm.size,
+            "subdomains": plan.count,
+            "faces": self.setup.share.n_faces,
+            "edges": self.setup.share.n_edges,
+            "mesh_checksum": self.setup.share.checksum,
+            "stepper": case.method.stepper,
+            "operator": case.method.operator,
+            "action": case.method.action,
+            "action_tolerance": case.method.action_tolerance,
+            "mismatch_tolerance_metres": case.subdomains.mismatch_tolerance,
+            "step_seconds": plan.step,
+            "z": plan.z,
+            "overlap": plan.overlap,
+            "steps": self.number,
+            "model_seconds": self.time,
+            "wall_seconds": spent.wall_seconds,
+            "simulated_over_real": self.time / max(spent.wall_seconds, 1e-9),
+            "mass_drift_relative": self.recorder.row.get("mass_drift", 0.0),
+            "largest_mismatch": spent.largest_mismatch,
+            "largest_action_error": spent.largest_error,
+            "repeats": spent.repeats,
+            "products": spent.products,
+            "messages": spent.messages,
+            "bytes_sent": spent.bytes_sent,
+            "peak_memory_bytes": self.comm.allreduce(peak_memory(), op=MPI.MAX),
+            "phases": self.comm.allgather({name: round(value, 3) for name, value in seconds.items()}),
+            "faces_by_rank": self.comm.allgather(sum(part.n_owned for part in self.setup.basin.parts)),
+            "faces_held_by_rank": self.comm.allgather(sum(part.mesh.n_faces for part in self.setup.basin.parts)),
+            "versions": versions(MPI.Get_library_version()),
+            "settings": case.to_text(),
+        }
+
+
+class _Sum(tuple):
+    """A tuple that adds elementwise in a reduction."""
+
+    def __add__(self, other):
+        return _Sum(a + b for a, b in zip(self, other, strict=True))
+
+
+def run_case(comm: MPI.Comm, case, folder: Path, resume: bool, overwrite: bool, quiet: bool) -> dict:
+    """Run a case into its result folder and return the summary. Collective.
+
+    resume     continue from the newest sound checkpoint; overwrite   replace an earlier result
+    Raises SweError kinds as the command line documents; all ranks raise alike.
+    """
+    began = clock.monotonic()
+
+    def say(text: str) -> None:
+        if comm.rank == 0 and not quiet:
+            print(text, flush=True)
+
+    result = on_root(comm, "claiming the result folder", _claim, folder, resume, overwrite)
+    recorder = None
+    try:
+        for note in result.notes if result else ():
+            say(note)
+        mesh = on_root(comm, "making the mesh", lambda: mesh_for(case, result.path, say))
+        saved = on_root(comm, "reading the checkpoint", _newest, case, result, mesh, say) if resume else None
+        sampling = on_root(comm, "placing the stations", stations_on, case, mesh)
+        setup = prepare(comm, case, mesh)
+        say(_what_runs(setup, case, comm.size))
+        recorder = Recorder(setup, case, result, mesh, sampling)
+        run = Run(comm, case, setup, recorder, physics_key(case), quiet, say, began=began)
+        setup.basin.phases.seconds["set-up"] = clock.monotonic() - began
+        run.resume(saved) if resume else run.start(mesh)
+        del mesh
+        return _to_the_end(run, result)
+    finally:
+        if recorder is not None:
+            recorder.close()
+        if result is not None:
+            result.release()
+
+
+def _to_the_end(run: Run, result: ResultFolder | None) -> dict:
+    try:
+        run.steps()
+        run.recorder.flush(run.time)
+        run.save()
+    except (Stopped, NumericalFailure):
+        summary = run.summary(finished=False)
+        on_root(run.comm, "writing the summary", lambda: write_summary(result.summary, summary))
+        raise
+    summary = run.summary(finished=True)
+    on_root(run.comm, "writing the summary", lambda: write_summary(result.summary, summary))
+    return summary
+
+
+def _claim(folder: Path, resume: bool, overwrite: bool) -> ResultFolder:
+    result = ResultFolder(folder)
+    return result.resume() if resume else result.overwrite() if overwrite else result.begin()
+
+
+def _newest(case, result: ResultFolder, mesh: Mesh, say) -> checkpoint.Checkpoint:
+    saved, skipped = checkpoint.newest(result.checkpoints)
+    for line in skipped:
+        say(line)
+    checkpoint.require(saved, mesh.checksum(), physics_key(case))
+    return saved
+
+
+def physics_key(case) -> str:
+    """Return what a checkpoint must share with the case that resumes it: physics and forcing, not method or cadence."""
+    return repr((case.earth, case.drag, case.wind, case.time.begin.isoformat()))
+
+
+def stations_on(case, mesh: Mesh) -> Sampling:
+    """Return where the case's stations are sampled. Not collective. Raises InputError for a station on land."""
+    return sample(mesh, [Station(item.name, *place_of(item)) for item in case.stations], STATION_REACH * mesh.edge_distance.max())
+
+
+def _what_runs(setup: Setup, case, ranks: int) -> str:
+    plan = setup.plan
+    return (
+        f"{case.title}: {setup.share.n_faces} faces, {plan.count} subdomains on {ranks} ranks, overlap {plan.overlap} layers, "
+        f"{plan.steps} steps of {plan.step:g} s (z = {plan.z:.1f}), {case.method.stepper}"
+        + (f" with the {case.method.operator} operator" if case.method.operator else "")
+    )

@@ -1,0 +1,145 @@
+"""From a case and its mesh to everything that a run needs on each rank.
+
+Sections of the case become objects: [earth], [drag] -> Physics; [wind] -> forcing; [method] -> stepper and operator;
+[subdomains] -> how many, how far they overlap, when they agree. Nothing is read or computed here that a stepper does.
+"""
+
+from __future__ import annotations
+
+import math
+from dataclasses import dataclass
+
+import numpy as np
+from mpi4py import MPI
+
+from swe.constants import DEGREE, EARTH_ROTATION
+from swe.dynamics.bounds import GravityBound
+from swe.dynamics.forcing.wind import ConstantWind
+from swe.dynamics.physics import CoriolisLaw, FPlane, NoRotation, Physics, Sphere
+from swe.exponential.bounds import overlap_for
+from swe.mesh.topology import Mesh
+from swe.parallel.distribute import Share, distribute
+from swe.parallel.reductions import Assembly
+from swe.parallel.schwarz import Agreement, Basin
+from swe.simulation.basin import basin_of
+from swe.steppers.contract import Stepper
+from swe.steppers.one_stage import OneStage
+from swe.steppers.runge_kutta import RungeKutta4
+from swe.steppers.two_stage import TwoStage
+
+EXPLICIT_OVERLAP = 1
+"""Layers that an explicit stepper needs: a stage reaches one ring, and every edge must have one owner."""
+
+
+@dataclass(frozen=True)
+class Plan:
+    """What will run, known from the case and a few numbers of the mesh.
+
+    count      subdomains in all; overlap   layers
+    radius     upper bound of the spectral radius of the wave operator, s-1; z = radius dt
+    step       s; steps   in the whole run
+    """
+
+    count: int
+    overlap: int
+    radius: float
+    step: float
+    steps: int
+
+    @property
+    def z(self) -> float:
+        return self.radius * self.step
+
+
+@dataclass(frozen=True, eq=False)
+class Setup:
+    """A rank's part of a run that is ready to begin."""
+
+    comm: MPI.Comm
+    plan: Plan
+    share: Share
+    basin: Basin
+    stepper: Stepper
+    agreement: Agreement
+    faces: Assembly
+    edges: Assembly
+
+    def largest(self, values: np.ndarray) -> np.ndarray:
+        """Return the elementwise largest over all ranks. Collective."""
+        out = np.empty_like(values)
+        self.comm.Allreduce(values, out, op=MPI.MAX)
+        return out
+
+
+def physics_of(case) -> Physics:
+    """Return the physical settings of a case. Not collective."""
+    return Physics(case.earth.gravity, case.earth.density, case.drag.bottom, case.drag.viscosity, coriolis_of(case))
+
+
+def coriolis_of(case) -> CoriolisLaw:
+    """Return the law of the Coriolis parameter of a case. Not collective."""
+    if case.earth.rotation == "sphere":
+        return Sphere(EARTH_ROTATION, 0.0)
+    if case.earth.rotation == "f-plane":
+        return FPlane(2.0 * EARTH_ROTATION * math.sin(case.earth.latitude * DEGREE))
+    return NoRotation()
+
+
+def forcing_of(case):
+    """Return the maker of a case's forcing on a restricted mesh. Not collective."""
+    east, north = case.wind.east, case.wind.north
+    return lambda mesh: (ConstantWind.on(mesh, east, north),) if east or north else ()
+
+
+def stepper_of(case) -> Stepper:
+    """Return the stepper of a case. Not collective."""
+    method = case.method
+    if method.stepper == "two-stage":
+        return TwoStage(method.operator, method.action, method.action_tolerance, method.largest_basis)
+    if method.stepper == "one-stage":
+        return OneStage(method.action, method.action_tolerance, method.largest_basis)
+    return RungeKutta4()
+
+
+def agreement_of(case) -> Agreement:
+    """Return when the subdomains of a case agree. An explicit step has nothing to agree about. Not collective."""
+    if case.subdomains.mismatch_tolerance is None:
+        return Agreement(math.inf, 0)
+    return Agreement(case.subdomains.mismatch_tolerance, case.subdomains.repeats)
+
+
+def plan_of(case, mesh: Mesh, ranks: int) -> Plan:
+    """Return what would run on `ranks` ranks. Not collective; needs the whole mesh."""
+    depth = mesh.depth[mesh.edge_faces[: mesh.n_inner]].mean(axis=1)
+    radius = GravityBound(mesh, mesh.n_faces, mesh.n_inner, case.earth.gravity)(depth)
+    step = case.time.step
+    count = case.subdomains.count or ranks * case.subdomains.per_rank
+    return Plan(count, _overlap(case, radius * step), radius, step, round(case.time.duration / step))
+
+
+def _overlap(case, z: float) -> int:
+    if case.method.stepper == "runge-kutta-4":
+        return EXPLICIT_OVERLAP
+    if case.subdomains.overlap is not None:
+        return case.subdomains.overlap
+    return overlap_for(z, case.subdomains.overlap_tolerance or case.method.action_tolerance)
+
+
+def prepare(comm: MPI.Comm, case, mesh: Mesh | None) -> Setup:
+    """Hand out rank 0's mesh and build everything on it. Collective."""
+    plan = comm.bcast(plan_of(case, mesh, comm.size) if comm.rank == 0 else None, root=0)
+    share = distribute(comm, mesh, plan.count, plan.overlap)
+    method = case.method
+    basin = basin_of(
+        comm, share, physics_of(case), forcing_of(case), bool(method.rotation_in_operator), bool(method.refresh_depth)
+    )
+    return Setup(
+        comm,
+        plan,
+        share,
+        basin,
+        stepper_of(case),
+        agreement_of(case),
+        Assembly(comm, basin.parts, "face", share.n_faces),
+        Assembly(comm, basin.parts, "edge", share.n_edges),
+    )
