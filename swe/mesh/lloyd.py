@@ -9,6 +9,10 @@ its three), and a linear rho is integrated exactly on each:
 
     integral rho dA = A (rho_1 + rho_2 + rho_3)/3,   integral rho x dA = A/12 ( sum rho sum x + sum rho_k x_k )
 
+Open cells do not move, and no step is longer than the mean distance to the neighbours: a cell on the rim that is closed
+only far outside the points must not fling its point away. Surround free points by two rows of fixed ones, so that no
+such cell is free.
+
 On the sphere A is the spherical area and x the chord, then the point is put back on the sphere: exact to second order in
 the spacing, and a regular cell keeps its centre.
 Sources: Lloyd 1982, IEEE Trans. Inf. Theory 28, 129; Du, Faber & Gunzburger 1999, SIAM Rev. 41, 637; Du, Gunzburger & Ju
@@ -63,12 +67,22 @@ def _fixed(fixed: np.ndarray, count: int) -> np.ndarray:
 
 
 def _steps(triangles: Triangles, count: int, density: np.ndarray | None, geometry: Geometry) -> tuple[np.ndarray, np.ndarray]:
-    """Centroid minus point, (n, 3), and which points may take it: bounded cells of positive mass."""
+    """Centroid minus point, (n, 3), no longer than the way to the neighbours; and which points may take it."""
     mass, moment = _moments(triangles, count, density, geometry)
     free = (mass > 0) & ~_hull(triangles.points, count)
     step = np.zeros_like(moment)
     step[free] = moment[free] / mass[free, None]
-    return step, free
+    length = np.linalg.norm(step, axis=1)
+    longest = _neighbour_distance(triangles, count, geometry)
+    return step * np.minimum(1.0, longest / np.where(length > 0, length, 1.0))[:, None], free
+
+
+def _neighbour_distance(triangles: Triangles, count: int, geometry: Geometry) -> np.ndarray:
+    """Mean distance to the Delaunay neighbours, (n,); inner sides count twice alike. 0 for a point of no triangle."""
+    side = geometry.distance(triangles.corners, np.roll(triangles.corners, -1, axis=1))
+    ends = np.concatenate([triangles.points.ravel(), np.roll(triangles.points, -1, axis=1).ravel()])
+    total = np.bincount(ends, np.tile(side.ravel(), 2), minlength=count)
+    return total / np.maximum(np.bincount(ends, minlength=count), 1)
 
 
 def _moments(triangles: Triangles, count: int, density: np.ndarray | None, geometry: Geometry) -> tuple[np.ndarray, np.ndarray]:

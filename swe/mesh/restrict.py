@@ -3,8 +3,8 @@
     faces   in the order given
     edges   inner ones (both faces held) first, by (larger local face, smaller local face): the edges among the first k
             faces are a prefix, for every k; then the border by (local face, edge of the whole mesh)
-    nodes   by their local faces (smallest, next, largest), then by node of the whole mesh: the nodes of the first k
-            faces are a prefix, for every k
+    nodes   by their smallest local face, then by node of the whole mesh: the nodes of the first k faces are a prefix, in
+            the same order, for every k
     kinds   an edge that separated two faces of the parent and now has one is CUT; others keep the kind they had
 
 No edge is turned round (topology.py) and nothing is computed anew: every length, area and direction is the parent's, bit for
@@ -99,5 +99,4 @@ def _nodes(node_faces: np.ndarray, ids: np.ndarray) -> np.ndarray:
     """Nodes of the parent with a face held, in local order."""
     held = np.flatnonzero((node_faces >= 0).any(axis=1))
     faces = node_faces[held]
-    ranked = np.sort(np.where(faces >= 0, faces, NONE), axis=1)
-    return held[np.lexsort((ids[held], ranked[:, 2], ranked[:, 1], ranked[:, 0]))]
+    return held[np.lexsort((ids[held], np.where(faces >= 0, faces, NONE).min(axis=1)))]

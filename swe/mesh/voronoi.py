@@ -28,7 +28,7 @@ import numpy as np
 from swe.errors import MeshError
 from swe.mesh.delaunay import Triangles, checked, periodic_triangles, plane_triangles, sphere_triangles
 from swe.mesh.plane import Geometry, PlaneGeometry
-from swe.mesh.sphere import SphereGeometry, dot, unit
+from swe.mesh.sphere import SphereGeometry, dot, tangential, unit
 from swe.mesh.topology import COAST, Mesh
 
 NONE = np.iinfo(np.int64).max
@@ -218,7 +218,7 @@ def _edge_geometry(geometry: Geometry, corners, node_xyz, half: np.ndarray, twin
     shift = first - corners[twin // 3, (twin + 1) % 3] if period else 0.0
     left, right = node_xyz[half // 3], node_xyz[twin // 3] + shift
     foot = geometry.midpoint(first, second)
-    normal = unit(second - first)
+    normal = unit(tangential(second - first, geometry.up(foot)))  # the last digit of |second| must not tilt it
     along = np.cross(geometry.up(foot), normal)
     middle = geometry.midpoint(right, left)
     return {
