@@ -1,7 +1,7 @@
 """The basin as a map needs it: polygons of the faces, coast lines, depths, and the passage worth a closer look.
 
-Coordinates are (longitude, latitude) in degrees on the sphere, unwrapped round the middle of the basin so that it does not fall apart
-at the date line, or (x, y) in m on a plane.
+Coordinates are (longitude, latitude) in degrees on the sphere, unwrapped round the middle of the basin so that it does not
+fall apart at the date line, or (x, y) in m on a plane.
 """
 
 from __future__ import annotations

@@ -8,6 +8,7 @@ from matplotlib.collections import LineCollection, PolyCollection
 from swe.analysis.figures.page import HALO
 from swe.analysis.figures.palette import INK
 
+
 def draw_cells(axes, basin, values, cmap, norm, lines=0.0) -> PolyCollection:
     """Colour the faces by `values` (nf,); `lines` is the width of the mesh lines in points, 0 for none. Not collective."""
     cells = PolyCollection(basin.polygons, array=np.asarray(values), cmap=cmap, norm=norm)

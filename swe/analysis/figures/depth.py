@@ -31,7 +31,9 @@ def draw_depth(result, path):
         draw_coast(axes, basin)
         scale_bar(axes, basin)
     west, south, east, north = window
-    whole.add_patch(Rectangle((west, south), east - west, north - south, fill=False, edgecolor="#d55e00", linewidth=1.3, zorder=5))
+    whole.add_patch(
+        Rectangle((west, south), east - west, north - south, fill=False, edgecolor="#d55e00", linewidth=1.3, zorder=5)
+    )
     for spine in close.spines.values():
         spine.set(edgecolor="#d55e00", linewidth=1.3)
     close.set_title("close view (frame in the map above)")

@@ -26,7 +26,7 @@ def draw_highest(result, path):
     above, below = figure.subplots(2, 1) if wide else figure.subplots(1, 2)
     hours = (highest.time - result.begin) / np.timedelta64(3600, "s")
     for axes, values, cmap, label, unit in (
-        (above, highest.level, HEIGHT, "highest level above the datum", "m"),
+        (above, highest.value, HEIGHT, "highest level above the datum", "m"),
         (below, hours, MOMENT, "when it came, after the begin of the run", "h"),
     ):
         dress_map(axes, basin)
@@ -36,9 +36,9 @@ def draw_highest(result, path):
         figure.colorbar(cells, ax=axes, label=f"{label.split(',')[0]} ({unit})", pad=0.01, fraction=0.04, aspect=26)
     scale_bar(above, basin)
     draw_stations(above, result.stations)
-    at = int(np.argmax(highest.level))
+    at = int(np.argmax(highest.value))
     above.plot(*basin.centres[at], "*", markersize=11, markerfacecolor="#d55e00", markeredgecolor="white", zorder=8)
-    above.set_title(f"highest level above the datum; star: {highest.level[at]:.3f} m, {moment(highest.time[at])}")
+    above.set_title(f"highest level above the datum; star: {highest.value[at]:.3f} m, {moment(highest.time[at])}")
     return save(figure, path)
 
 
@@ -48,7 +48,8 @@ def draw_snapshots(result, path):
     basin = result.basin
     records = snapshot_records(len(result.times))
     levels = [result.level(k) for k in records]
-    currents = [result.current(k) for k in records]
+    still = np.zeros((basin.area.size, 2))
+    currents = [result.current(k) if result.has_currents() else still for k in records]
     rows = -(-len(records) // 2)
     figure = sheet(result.title, "Water level and currents", 12.0, rows * (map_height(basin, 5.2) + 0.45) + 1.2)
     panels = figure.subplots(rows, 2, sharex=True, sharey=True, squeeze=False).ravel()
@@ -63,14 +64,17 @@ def draw_snapshots(result, path):
         cells = draw_cells(axes, basin, level, signed(), norm)
         draw_coast(axes, basin, 0.5)
         arrows.append(_draw_arrows(axes, basin, current, chosen, fast))
-        axes.set_title(f"{moment(result.times[k])}   level {level.min():+.3f} to {level.max():+.3f} m")
+        axes.set_title(f"{moment(result.times[k])}   level {signed_text(level.min())} to {signed_text(level.max())} m")
         axes.label_outer()
     for axes in panels[len(records) :]:
         axes.set_visible(False)
     scale_bar(panels[0], basin)
     unit = _round(0.6 * fast)
-    key = panels[0].quiverkey(arrows[0], 0.93, 0.07, unit, f"{unit:g} m/s", labelpos="W", fontproperties={"size": 8}, zorder=9)
-    key.text.set_path_effects(HALO)
+    if result.has_currents():
+        key = panels[0].quiverkey(
+            arrows[0], 0.93, 0.07, unit, f"{unit:g} m/s", labelpos="W", fontproperties={"size": 8}, zorder=9
+        )
+        key.text.set_path_effects(HALO)
     figure.colorbar(cells, ax=list(panels), label="water level above the datum (m)", pad=0.01, fraction=0.025, aspect=38)
     return save(figure, path)
 
@@ -102,8 +106,13 @@ def _draw_arrows(axes, basin, current, chosen, fast):
     east, north = current[chosen].T
     return axes.quiver(
         x, y, east, north,
-        angles="uv", pivot="mid", scale_units="width", scale=fast * ARROWS_ACROSS / 1.6, width=0.0019, color=INK, zorder=5,
+        angles="uv", pivot="mid", scale_units="width", scale=fast * ARROWS_ACROSS / 1.6, width=0.0021, color=INK, zorder=5,
     )  # fmt: skip
+
+
+def signed_text(value: float) -> str:
+    """Return a level to the millimetre with its sign. Not collective."""
+    return f"{value:+z.3f}".replace("-", "−")
 
 
 def _round(value: float) -> float:

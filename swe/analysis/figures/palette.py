@@ -11,8 +11,8 @@ both arms with the same lightness and chroma,
 
     L* = 96 - 60 r,   C* = 46 sin(pi/2 min(r / 0.8, 1)),   hue 280 deg (blue, below) or 60 deg (orange-brown, above)
 
-In both, r in 0..1 is re-spaced so that equal steps of the value are equal steps of the CIE 1976 colour difference. The arms of the signed map
-differ along the blue-yellow direction, which people without red or green cones keep.
+In both, r in 0..1 is re-spaced so that equal steps of the value are equal steps of the CIE 1976 colour difference. The arms
+of the signed map differ along the blue-yellow direction, which people without red or green cones keep.
 CIELAB to sRGB: CIE 15:2004 and IEC 61966-2-1, white point D65.
 """
 

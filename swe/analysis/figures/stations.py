@@ -33,7 +33,9 @@ def _draw_sheet(result, stations, rows, path):
             dress_time(axes)
             highest = int(np.nanargmax(values))
             axes.plot(stations.times[highest], values[highest], "o", markersize=4, color=colour, clip_on=False)
-            axes.set_title(f"{stations.names[k]}: highest {values[highest]:.3f} {unit}, {moment(stations.times[highest])}", fontsize=8.5)
+            axes.set_title(
+                f"{stations.names[k]}: highest {values[highest]:.3f} {unit}, {moment(stations.times[highest])}", fontsize=8.5
+            )
         left.axhline(0.0, color="#8a8a8a", linewidth=0.7, zorder=0)
         left.set_ylabel("level (m)")
         right.set_ylabel("speed (m/s)")
