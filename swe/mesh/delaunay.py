@@ -75,6 +75,12 @@ def periodic_triangles(points: np.ndarray, period: tuple[float, float]) -> Trian
     )
 
 
+def wrapped(points: np.ndarray, period: tuple[float, float]) -> np.ndarray:
+    """Return points (n, 2) moved by whole periods into 0 <= x < Lx, 0 <= y < Ly. Not collective."""
+    points = np.mod(points, period)
+    return np.where(points < period, points, 0.0)  # mod of a tiny negative number is the period itself
+
+
 def sphere_triangles(xyz: np.ndarray, radius: float) -> Triangles:
     """Return the spherical Delaunay triangles of points (n, 3) of any length; radius in m. Not collective."""
     xyz = checked(xyz, 3)

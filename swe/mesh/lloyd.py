@@ -24,7 +24,7 @@ from __future__ import annotations
 import numpy as np
 
 from swe.errors import MeshError
-from swe.mesh.delaunay import Triangles, checked, periodic_triangles, plane_triangles, sphere_triangles
+from swe.mesh.delaunay import Triangles, checked, periodic_triangles, plane_triangles, sphere_triangles, wrapped
 from swe.mesh.plane import Geometry, PlaneGeometry
 from swe.mesh.sphere import SphereGeometry, unit
 
@@ -35,17 +35,19 @@ def lloyd_plane(
     """Return the points (n, 2), m, after one sweep on a plane. Not collective.
 
     fixed (n,) bool: points that stay; so do points whose cell is unbounded (those on the hull). density (n,) > 0 at the
-    points, in any unit, or None for a constant one. period (Lx, Ly) in m of a doubly periodic plane, or None.
+    points, in any unit, or None for a constant one. period (Lx, Ly) in m of a doubly periodic plane, into which the points
+    are wrapped, or None.
     """
     points = checked(points, 2)
     if period is None:
         triangles = plane_triangles(points)
     else:
-        points = np.mod(points, period)
+        points = wrapped(points, period)
         triangles = periodic_triangles(points, period)
     step, free = _steps(triangles, len(points), density, PlaneGeometry())
     free &= ~_fixed(fixed, len(points))
-    return np.where(free[:, None], points + step[:, :2], points)
+    moved = np.where(free[:, None], points + step[:, :2], points)
+    return moved if period is None else wrapped(moved, period)
 
 
 def lloyd_sphere(xyz: np.ndarray, fixed: np.ndarray, density: np.ndarray | None = None) -> np.ndarray:

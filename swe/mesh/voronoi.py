@@ -26,7 +26,7 @@ from dataclasses import dataclass
 import numpy as np
 
 from swe.errors import MeshError
-from swe.mesh.delaunay import Triangles, checked, periodic_triangles, plane_triangles, sphere_triangles
+from swe.mesh.delaunay import Triangles, checked, periodic_triangles, plane_triangles, sphere_triangles, wrapped
 from swe.mesh.plane import Geometry, PlaneGeometry
 from swe.mesh.sphere import SphereGeometry, dot, tangential, unit
 from swe.mesh.topology import COAST, Mesh
@@ -46,8 +46,7 @@ def plane_mesh(points: np.ndarray, wet: np.ndarray, period: tuple[float, float] 
     if period is None:
         triangles = plane_triangles(points)
     else:
-        points = np.mod(points, period)
-        points = np.where(points < period, points, 0.0)  # mod of a tiny negative number is the period itself
+        points = wrapped(points, period)
         triangles = periodic_triangles(points, period)
         period = (float(period[0]), float(period[1]))
     raised = np.column_stack([points, np.zeros(len(points))])
