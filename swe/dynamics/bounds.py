@@ -22,6 +22,9 @@ import numpy as np
 
 from swe.mesh.topology import Mesh
 
+ROUND_OFF = 8.0 * np.finfo(float).eps
+"""Error of t^2 - 4 s over t^2: it must not lower the bound where the roots are equal; it raises it by 2e-8 at most."""
+
 
 class GravityBound:
     """The bound for the first `mf` faces and the first `ms` edges of a mesh, for any depth."""
@@ -48,7 +51,7 @@ class GravityBound:
             coupling = np.where(half > 0.0, half**2 / (stiffness * other), 0.0)
         minors = (r * np.roll(r, -1, axis=1) * (1.0 - coupling)).sum(axis=1)
         trace = r.sum(axis=1)
-        root = np.sqrt(np.maximum(trace**2 - 4.0 * minors, 0.0))
+        root = np.sqrt(np.maximum(trace**2 - 4.0 * minors, 0.0) + ROUND_OFF * trace**2)
         return float(np.sqrt(0.5 * (trace + root).max(initial=0.0)))
 
 

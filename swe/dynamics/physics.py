@@ -67,7 +67,7 @@ class Sphere:
 
     def at_nodes(self, mesh: Mesh) -> np.ndarray:
         if not mesh.spherical:
-            raise InputError("coriolis: the sphere law needs a spherical mesh, this one is plane; use a constant f or a beta-plane")
+            raise InputError("coriolis: the sphere law needs a spherical mesh, found a plane; use a constant f or a beta-plane")
         axis = np.array([-math.sin(self.tilt), 0.0, math.cos(self.tilt)])
         return 2.0 * self.rate * (mesh.node_xyz @ axis) / np.linalg.norm(mesh.node_xyz, axis=1)
 

@@ -2,24 +2,10 @@
 
 import numpy as np
 import pytest
-from operators.operator_meshes import MESHES
+from operators.operator_meshes import MESHES, part_of
 
 from swe.mesh.restrict import restrict
 from swe.operators import build
-
-
-def part_of(mesh, layers=3):
-    """Faces within `layers` neighbours of face 5, from the inside out; the number of those that keep all neighbours."""
-    rank = np.full(mesh.n_faces, -1)
-    rank[5] = 0
-    pairs = mesh.edge_faces[: mesh.n_inner]
-    for layer in range(1, layers + 1):
-        for first, second in (pairs.T, pairs[:, ::-1].T):
-            near = second[(rank[first] == layer - 1) & (rank[second] < 0)]
-            rank[near] = layer
-    faces = np.flatnonzero(rank >= 0)
-    faces = faces[np.argsort(rank[faces], kind="stable")]
-    return faces, np.count_nonzero((rank >= 0) & (rank < layers))
 
 
 @pytest.mark.parametrize("name", list(MESHES))
