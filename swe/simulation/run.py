@@ -22,7 +22,7 @@ from swe.output.folder import ResultFolder
 from swe.output.stations import Sampling, Station, sample
 from swe.output.summary import versions, write_summary
 from swe.parallel.ranks import StopRequest, on_root, peak_memory
-from swe.case.schema import place_of
+from swe.case.case import place_of
 from swe.simulation.meshing import mesh_for
 from swe.simulation.progress import Progress, Reading
 from swe.simulation.progress import clock as model_clock

@@ -7,7 +7,7 @@ from pathlib import Path
 import netCDF4
 import numpy as np
 
-from swe.case.schema import place_of
+from swe.case.case import place_of
 from swe.constants import DEGREE
 from swe.errors import InputError
 from swe.mesh.topology import Mesh
