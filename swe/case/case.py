@@ -7,6 +7,7 @@ from pathlib import Path
 
 from swe.case.keys import REQUIRED, key, section, sections_of
 from swe.case.kinds import Text
+from swe.case.lines import line_of
 from swe.case.schema import (
     BasinSection,
     CheckpointSection,
@@ -58,14 +59,13 @@ class Case:
         """Name of the case: that of its file without the ending."""
         return self.path.stem
 
-    def given(self, section: str, key: str) -> bool:
-        """Return whether the file gives the key, rather than leaving it to its default. Not collective."""
-        return (section, key) in self.lines
+    def given(self, *path: str | int) -> bool:
+        """Return whether the file gives a key, such as ("mesh", "seed"), rather than leaving it out. Not collective."""
+        return path in self.lines
 
-    def where(self, section: str, key: str) -> str:
-        """Return "file:line: [section] key" to begin a message about a value. Not collective."""
-        path = (section, key)
-        line = self.lines.get(path) or self.lines.get(path[:1])
+    def where(self, *path: str | int) -> str:
+        """Return "file:line: [section] key" to begin a message; a station's key is ("station", 0, "x"). Not collective."""
+        line = line_of(self.lines, path)
         return f"{self.path}:{line}: {place(path)}" if line else f"{self.path}: {place(path)}"
 
     def to_text(self) -> str:

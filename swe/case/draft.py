@@ -9,6 +9,7 @@ from __future__ import annotations
 from dataclasses import dataclass, field
 from pathlib import Path
 
+from swe.case.lines import line_of
 from swe.case.words import place, toml
 
 
@@ -35,7 +36,7 @@ class Draft:
 
     def wrong(self, path: tuple, what: str, allowed: str = "", hint: str = "", header: str = "") -> None:
         """Note a mistake at `path`: what was found, what is allowed, what to do; `header` names a whole section."""
-        line = next((self.lines[path[:n]] for n in range(len(path), 0, -1) if path[:n] in self.lines), 0)
+        line = line_of(self.lines, path)
         where = f"{self.label}:{line}" if line else self.label
         value = f" = {toml(self.written[path])}" if path in self.written else ""
         parts = [f"{where}: {header or place(path)}{value}: {what}"]

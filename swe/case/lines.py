@@ -31,6 +31,11 @@ def find_lines(text: str) -> dict[Path, int]:
     return _Walk(text.replace("\r\n", "\n")).lines
 
 
+def line_of(lines: dict[Path, int], path: Path) -> int:
+    """Return the line of `path`, or of the nearest table around it that the file has; 0 when there is none. Not collective."""
+    return next((lines[path[:n]] for n in range(len(path), 0, -1) if path[:n] in lines), 0)
+
+
 class _Walk:
     """One pass over the text; `at` is the place reached."""
 

@@ -76,6 +76,12 @@ class DepthSection:
         _without_mesh_file(OPTIONAL),
         '"soundings.csv"',
     )
+    datum: str = key(
+        Choice(("mean_sea_level", "geoid", "geopotential_datum", "reference_ellipsoid", "lake")),
+        'what levels and depths are measured from, as a standard name in the files tells; "lake", the local datum of a lake',
+        "mean_sea_level",
+        '"lake"',
+    )
     least: float | None = key(
         DEPTH,
         "least depth: shallower water is deepened to it, because cells never fall dry",

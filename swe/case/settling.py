@@ -33,7 +33,9 @@ def _settle_key(draft: Draft, path: tuple, key: Key) -> None:
         draft.wrong(
             path, "not used in this case", f"only {key.need.condition(key.need.by)}", "leave it out, or change the other key"
         )
+        # For all others it now counts as absent, so that keys that hang on it are named as well.
         del draft.written[path], draft.values[path]
+        draft.broken.remove(path)
     elif need is REQUIRED and not given:
         _missing(draft, path, key)
     elif need is not None and need is not OPTIONAL and not given:

@@ -31,7 +31,7 @@ def summary_lines(case: Case) -> list[str]:
                 lines.append(_row(f"{section.name} {table[1] + 1}", ", ".join(f"{name} {text}" for name, text in shown)))
                 continue
             for name, text in shown:
-                mark = "" if (*table, name) in case.lines else "   (default)"
+                mark = "" if case.given(*table, name) else "   (default)"
                 lines.append(_row(".".join((*table, name)), text + mark))
     return lines
 
