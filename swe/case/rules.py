@@ -7,7 +7,7 @@ from __future__ import annotations
 
 from swe.case.case import SECTIONS
 from swe.case.draft import Draft
-from swe.case.schema import EXPONENTIAL, SPACING
+from swe.case.schema import DEPTH, EXPONENTIAL, SPACING
 from swe.case.settling import tables
 from swe.case.units import TIME, show
 from swe.case.words import toml
@@ -40,7 +40,7 @@ def least_depth(draft: Draft) -> None:
     if draft.sound("depth.least", "depth.constant") and draft.value("depth.constant"):
         least, constant = draft.value("depth.least"), draft.value("depth.constant")
         if least is not None and least > constant:
-            draft.wrong(("depth", "least"), "above the constant depth", f"at most {SPACING.show(constant)}")
+            draft.wrong(("depth", "least"), "above the constant depth", f"at most {DEPTH.show(constant)}")
 
 
 def one_spacing(draft: Draft) -> None:

@@ -65,6 +65,7 @@ def toml(value) -> str:
 
 def place(path: tuple) -> str:
     """Return a path in the words of the file: "[mesh] spacing", "[station 3] x". Not collective."""
+    path = tuple(part if isinstance(part, int) or part.isprintable() else quoted(part) for part in path)
     if len(path) == 1:
         return path[0]
     table = " ".join(str(part + 1) if isinstance(part, int) else part for part in path[:-1])

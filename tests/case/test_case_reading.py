@@ -92,6 +92,7 @@ def test_the_error_is_one_message_a_line(tmp_path):
         ("[drag]\nbotom = 0.1\n", "[drag] botom = 0.1: unknown key; allowed: bottom, viscosity; did you mean bottom?"),
         ("[drag]\nnorth = 0.1\n", "[drag] north = 0.1: unknown key; allowed: bottom, viscosity; it is a key of [wind]"),
         ("[drag]\ny = 0.1\n", "[drag] y = 0.1: unknown key; allowed: bottom, viscosity; it is a key of [start] and [[station]]"),
+        ('[drag]\n"a\\nb" = 0.1\n', '[drag] "a\\nb" = 0.1: unknown key; allowed: bottom, viscosity'),
         ("[drag]\nquality = 0.1\n", "[drag] quality = 0.1: unknown key; allowed: bottom, viscosity"),
         (
             "[drag]\nmore.bottom = 1\n",
