@@ -52,12 +52,10 @@ def jacobian(water, eta, u, time):
     by_u, by_t, by_h = drag_derivatives(physics.bottom_drag, u, op.tangential @ u, h_edge)
     by_h = by_h - water.stress(time) / (physics.density * h_edge**2)
     wet = diag((np.arange(mesh.n_edges) < mesh.n_inner).astype(float))
-    blocks = [
-        [-op.div @ flow_by_eta, -op.div @ flow_by_u],
-        [
-            wet @ (turn @ flow_by_eta - bend @ diag(q_node) @ op.face_to_node - physics.gravity * op.grad + diag(by_h) @ op.face_to_edge),
-            wet @ (turn @ flow_by_u + bend @ op.curl - 2.0 * op.grad @ op.kinetic @ diag(u) + diag(by_u) + diag(by_t) @ op.tangential
-            + viscosity_matrix(op, physics.lateral_viscosity)),
-        ],
-    ]  # fmt: skip
+    level_by = -op.div @ flow_by_eta, -op.div @ flow_by_u
+    velocity_by_eta = turn @ flow_by_eta - bend @ diag(q_node) @ op.face_to_node - physics.gravity * op.grad
+    velocity_by_eta = velocity_by_eta + diag(by_h) @ op.face_to_edge
+    velocity_by_u = turn @ flow_by_u + bend @ op.curl - 2.0 * op.grad @ op.kinetic @ diag(u)
+    velocity_by_u = velocity_by_u + diag(by_u) + diag(by_t) @ op.tangential + viscosity_matrix(op, physics.lateral_viscosity)
+    blocks = [level_by, (wet @ velocity_by_eta, wet @ velocity_by_u)]
     return sparse.block_array(blocks).tocsr()

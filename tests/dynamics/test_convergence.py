@@ -39,13 +39,13 @@ class Manufactured:
 
     def rates(self, x, y):
         """Exact (d eta/dt, du/dt, dv/dt) with rotation, wind and bottom drag."""
-        k, l, kx, ly = self.k, self.l, self.k * x, self.l * y
+        k, m, kx, ly = self.k, self.l, self.k * x, self.l * y
         (u, v), h = self.flow(x, y), self.depth(x, y) + self.level(x, y)
-        u_x, u_y = k * self.u0 * np.cos(kx) * np.cos(ly), -l * self.u0 * np.sin(kx) * np.sin(ly)
-        v_x, v_y = -k * self.v0 * np.sin(kx) * np.sin(ly), l * self.v0 * np.cos(kx) * np.cos(ly)
-        eta_x, eta_y = -k * self.e * np.sin(kx) * np.cos(ly), -l * self.e * np.cos(kx) * np.sin(ly)
+        u_x, u_y = k * self.u0 * np.cos(kx) * np.cos(ly), -m * self.u0 * np.sin(kx) * np.sin(ly)
+        v_x, v_y = -k * self.v0 * np.sin(kx) * np.sin(ly), m * self.v0 * np.cos(kx) * np.cos(ly)
+        eta_x, eta_y = -k * self.e * np.sin(kx) * np.cos(ly), -m * self.e * np.cos(kx) * np.sin(ly)
         h_x = eta_x - 2 * k * self.b1 * np.sin(2 * kx) * np.cos(2 * ly)
-        h_y = eta_y - 2 * l * self.b1 * np.cos(2 * kx) * np.sin(2 * ly)
+        h_y = eta_y - 2 * m * self.b1 * np.cos(2 * kx) * np.sin(2 * ly)
         rub = DRAG * np.hypot(u, v) / h
         level = -(u * h_x + v * h_y + h * (u_x + v_y))
         along_x = F * v - u * u_x - v * u_y - GRAVITY * eta_x + WIND[0] / (DENSITY * h) - rub * u
@@ -86,10 +86,10 @@ def test_manufactured_rates_converge_with_second_order():
 def viscous_errors(n):
     """Of the vectors at face centres, and of the damping rate of a flow with divergence and vorticity."""
     mesh = lattice(n)
-    op, k, l = build(mesh), 2 * np.pi / mesh.period[0], 2 * np.pi / mesh.period[1]
+    op, k, m = build(mesh), 2 * np.pi / mesh.period[0], 2 * np.pi / mesh.period[1]
     x, y = mesh.edge_xyz[:, :2].T
-    u = np.sin(k * x) * np.cos(l * y) * mesh.edge_normal[:, 0] + np.cos(k * x) * np.sin(l * y) * mesh.edge_normal[:, 1]
-    exact = -(k**2 + l**2)
+    u = np.sin(k * x) * np.cos(m * y) * mesh.edge_normal[:, 0] + np.cos(k * x) * np.sin(m * y) * mesh.edge_normal[:, 1]
+    exact = -(k**2 + m**2)
     push = viscosity(op, 1.0, u, op.curl @ u)
     vectors = [rms(r @ (push - exact * u), exact * (r @ u)) for r in reconstruction(mesh)]
     return np.array([*vectors, abs((u @ push) / (u @ u) / exact - 1.0)])

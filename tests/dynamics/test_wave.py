@@ -157,14 +157,14 @@ def test_geostrophic_states_are_steady(name):
 @pytest.mark.parametrize("name", NAMES)
 def test_radius_bounds_the_spectrum(name, rotation):
     operator = whole(water_on(rough_mesh(name)), rotation)
-    true = np.abs(np.linalg.eigvalsh(1j * operator.matrix.toarray())).max()
+    true = np.linalg.norm(operator.matrix.toarray(), 2)  # skew: the radius is the norm
     assert true <= operator.radius * (1 + 1e-12)
 
 
 @pytest.mark.parametrize("name", ["regular", "irregular", "rectangle", "lake", "globe", "sphere sea"])
 def test_radius_of_gravity_waves_is_sharp(name):
     operator = whole(water_on(rough_mesh(name)), False)
-    true = np.abs(np.linalg.eigvalsh(1j * operator.matrix.toarray())).max()
+    true = np.linalg.norm(operator.matrix.toarray(), 2)  # skew: the radius is the norm
     assert operator.radius < 1.2 * true
 
 

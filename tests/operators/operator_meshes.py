@@ -39,11 +39,11 @@ def spread_points(n):
     return np.column_stack([ring * np.cos(angle), ring * np.sin(angle), z])
 
 
-def globe(n=250):
+def globe(n=122):
     return sphere_mesh(spread_points(n), np.ones(n, dtype=bool), RADIUS)
 
 
-def sphere_sea(n=400):
+def sphere_sea(n=260):
     """A third of the sphere with a ragged coast and an island."""
     points = spread_points(n)
     wet = (points[:, 0] > 0.1) & (points[:, 0] < 0.97)
