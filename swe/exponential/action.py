@@ -1,8 +1,8 @@
 """The one seam of this room: step phi_k(step L) b to a tolerance, by the method that is asked for.
 
-With w the square root of the energy weights, S = W L W^-1 and phi_k(step L) b = W^-1 phi_k(step S) W b. The methods see S, W b and
-the plain inner product; what a caller sees is unscaled. Tolerance and error are the energy norm of the increment
-step phi_k(step L) b, so they have the unit of the energy norm of a state.
+With W = diag of the square roots of the energy weights, S = W L W^-1 and phi_k(step L) b = W^-1 phi_k(step S) W b. The
+methods see S, W b and the plain inner product; what a caller sees is unscaled. Tolerance and error are energy norms of the
+increment step phi_k(step L) b, so they have the unit of the energy norm of a state.
 """
 
 from __future__ import annotations
@@ -45,10 +45,10 @@ def phi_action(
     square = float(scaled @ scaled)
     if not math.isfinite(square):
         values = tuple(np.full(operator.size, np.nan) for _ in orders)
-        return Action(values, math.inf, 0, False, "the vector that phi_k acts on is not finite; look at the state before this step")
+        return Action(values, math.inf, 0, False, "the vector that phi_k acts on is not finite; look at the state before it")
     if not tolerance >= 0.0:
         raise ValueError(f"tolerance is {tolerance}; it must be a number >= 0")
-    if square == 0.0 or step == 0.0:
+    if square == 0.0 or step == 0.0 or operator.radius == 0.0:  # phi_k(0) b = b / k!
         return Action(tuple(b / math.factorial(k) for k in orders), 0.0, 0, True, "")
     action = METHODS[method](operator, scaled, step, orders, tolerance, largest)
     return replace(action, values=tuple(value / operator.weights for value in action.values))

@@ -37,15 +37,16 @@ def arnoldi(operator: Operator, b: np.ndarray, step: float, orders: tuple[int, .
     """
     size = math.sqrt(b @ b)
     scale = abs(step) * size
-    reach = operator.radius * abs(step)
+    radius = operator.radius
+    reach = radius * abs(step)
     forecast = Forecast(min(orders), max(tolerance / scale, ROUND_OFF))
     basis = Basis(len(b))
     np.multiply(b, 1.0 / size, out=basis.vector(0))  # 1.
     columns_of_h: list[np.ndarray] = []
     reaches: list[float] = []  # |step S v_j|
     for products in range(1, largest + 1):
-        column = _next_column(operator, basis, products)  # 2. to 4.
-        if not np.isfinite(column[-1]):
+        column = _next_column(operator, basis, products, radius)  # 2. to 4.
+        if not math.isfinite(column[-1]):
             return broken("Arnoldi", orders, len(b), products)
         last = products == largest or column[-1] == 0.0
         residual = 0.0
@@ -64,16 +65,19 @@ def arnoldi(operator: Operator, b: np.ndarray, step: float, orders: tuple[int, .
     return outcome("Arnoldi", values, scale * error, products, tolerance, reach, scale * ROUND_OFF)
 
 
-def _next_column(operator: Operator, basis: Basis, j: int) -> np.ndarray:
+def _next_column(operator: Operator, basis: Basis, j: int, radius: float) -> np.ndarray:
     """Write the next vector of the basis and return column j of H, (j + 1,); its last entry 0 when there is no new direction."""
     w = basis.vector(j)
     w[:] = operator.product(basis.vector(j - 1))
     before = math.sqrt(w @ w)
     column = np.zeros(j + 1)
+    if not math.isfinite(before):
+        column[j] = before
+        return column
     after = _orthogonalise(w, basis, column[:j])
     if after < REPEAT * before:
         after = _orthogonalise(w, basis, column[:j])
-    if after <= CLOSED * operator.radius:
+    if after <= CLOSED * radius:
         return column
     w *= 1.0 / after
     column[j] = after

@@ -12,9 +12,9 @@ by interpolation at N Chebyshev nodes x_l (one cosine transform). i^j T_j(X) is 
     3.  phi_k(step S) b  ~  sum_{j <= m} a_j u_j,     a_j = i^-j c_j,    |u_j| <= |b|
 
 One recurrence serves all orders. The degree m is the smallest for which step |b| sum_{j > m} |a_j| is below the tolerance: the
-exact tail of phi_k, sharper than the Bessel bound, which sets N. Afterwards the tail is weighted by the norms of the last
-two vectors, which say how much of b the even and the odd polynomials of high degree see: that is the estimate. When `radius` is too
-small for S these norms grow without bound, and so does the estimate.
+exact tail of phi_k, sharper than the Bessel bound, which sets N. It is at least 1. Afterwards the tail is weighted by the
+norms of the last two vectors, which say how much of b the even and the odd polynomials of high degree see: that is the
+estimate. When `radius` is too small for S these norms grow without bound, and so does the estimate.
 """
 
 from __future__ import annotations
@@ -45,7 +45,8 @@ def chebyshev(operator: Operator, b: np.ndarray, step: float, orders: tuple[int,
     series = coefficients(operator.radius * step, orders)
     allowed = max(tolerance / scale, ROUND_OFF)
     degree = min(max(_degree(series, allowed), 1), largest)
-    values, norms = _sum(operator, b, series[:, : degree + 1])
+    with np.errstate(over="ignore", invalid="ignore"):  # a product that is not finite is reported below
+        values, norms = _sum(operator, b, series[:, : degree + 1])  # 1. to 3.
     if not np.all(np.isfinite(norms)):
         return broken("Chebyshev", orders, len(b), degree)
     error = max(_estimate(series, degree, norms / size), ROUND_OFF)
@@ -74,16 +75,16 @@ def _degree(series: np.ndarray, allowed: float) -> int:
 
 def _sum(operator: Operator, b: np.ndarray, series: np.ndarray) -> tuple[list[np.ndarray], np.ndarray]:
     """Return sum_j a_j u_j for each order, and the norms of the last two u."""
-    before, current = np.zeros(0), b.copy()  # 1.
     values = [a[0] * b for a in series]
+    before, current = b, operator.product(b) * (1.0 / operator.radius)
     for j in range(1, series.shape[1]):
-        following = operator.product(current) * ((1.0 if j == 1 else 2.0) / operator.radius)  # 2.
         if j > 1:
+            following = operator.product(current) * (2.0 / operator.radius)
             following += before
-        before, current = current, following
+            before, current = current, following
         for value, a in zip(values, series):
-            daxpy(current, value, a=a[j])  # 3.
-    return values, np.sqrt([before @ before if len(before) else current @ current, current @ current])
+            daxpy(current, value, a=a[j])
+    return values, np.sqrt([before @ before, current @ current])
 
 
 def _estimate(series: np.ndarray, degree: int, norms: np.ndarray) -> float:
