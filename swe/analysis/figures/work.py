@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 import numpy as np
-from matplotlib.ticker import MaxNLocator
+from matplotlib.ticker import FixedLocator, MaxNLocator
 
 from swe.analysis.figures.page import save, sheet, styled
 from swe.analysis.figures.palette import INK, SERIES
@@ -24,12 +24,12 @@ def draw_work(result, path):
     for k, name in enumerate(names):
         colour, hatch = SERIES[k % len(SERIES)], HATCHES[k // len(SERIES) % len(HATCHES)]
         share = seconds[:, k].sum() / max(seconds.sum(), 1e-300)
-        label = f"{name} ({100.0 * share:.0f} %)"
+        label = f"{name} ({100.0 * share:.1f} %)"
         axes.barh(ranks, seconds[:, k], left=left, color=colour, hatch=hatch, edgecolor="white", linewidth=0.4, label=label)
         left += seconds[:, k]
     axes.axvline(summary["wall_seconds"], color=INK, linewidth=1.0, linestyle="--", label="wall time of the run")
     axes.set(xlabel="wall time (s)", ylabel="rank", ylim=(len(ranks) - 0.4, -0.6))
-    axes.yaxis.set_major_locator(MaxNLocator(integer=True))
+    axes.yaxis.set_major_locator(FixedLocator(ranks) if len(ranks) <= 20 else MaxNLocator(integer=True))
     axes.grid(True, axis="x")
     axes.set_axisbelow(True)
     axes.legend(loc="upper left", bbox_to_anchor=(1.0, 1.0), title="share of all ranks", title_fontsize=8, alignment="left")
@@ -49,6 +49,11 @@ def phase_table(phases: list[dict[str, float]]) -> tuple[list[str], np.ndarray]:
 def _subject(summary: dict) -> str:
     speed = summary["model_seconds"] / max(summary["wall_seconds"], 1e-9)
     return (
-        f"Work: {summary['ranks']} ranks, {summary['subdomains']} subdomains, {summary['faces']:,} faces, "
+        f"Work: {counted(summary['ranks'], 'rank')}, {counted(summary['subdomains'], 'subdomain')}, {summary['faces']:,} faces, "
         f"{summary['steps']:,} steps in {summary['wall_seconds']:,.0f} s ({speed:,.0f} x real time)"
     )
+
+
+def counted(number: int, what: str) -> str:
+    """Return a number with its noun in the right form. Not collective."""
+    return f"{number:,} {what}" + ("" if number == 1 else "s")
