@@ -19,6 +19,7 @@ from pathlib import Path
 import netCDF4
 import numpy as np
 
+from swe.errors import InputError
 from swe.mesh.files import Places, define_mesh
 from swe.mesh.topology import Mesh
 from swe.output.catalogue import Quantity, mesh_quantities, velocity_names
@@ -73,7 +74,7 @@ class FieldsFile:
         attributes   global attributes, from `records.file_attributes`
         datum        of catalogue.DATUMS
         precision    "double" or "single" for the series; extremes and depth are always double
-        Raises FileError, InputError for an unknown datum.
+        Raises FileError, InputError for an unknown name or datum.
         """
         quantities = mesh_quantities(mesh.spherical, datum)
         series = series_named(names, mesh.spherical)
@@ -160,10 +161,10 @@ class FieldsFile:
 
 
 def series_named(names: Sequence[str], spherical: bool) -> list[str]:
-    """Return the variables of each record for the chosen names. Not collective. Raises ValueError for an unknown one."""
+    """Return the variables of each record for the chosen names. Not collective. Raises InputError for an unknown one."""
     unknown = [name for name in names if name not in CHOICES]
     if unknown:
-        raise ValueError(f"{', '.join(unknown)}: not among {', '.join(CHOICES)}")
+        raise InputError(f"fields to write: {unknown[0]!r} is not known; allowed are {', '.join(CHOICES)}")
     members = {"level": ("level",), "velocity": velocity_names(spherical), "normal_velocity": ("normal_velocity",)}
     return [variable for name, variables in members.items() if name in names for variable in variables]
 

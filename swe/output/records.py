@@ -137,7 +137,7 @@ def open_again(path: str | Path, keep_until: float) -> Records:
     """
     path = Path(path)
     if not path.is_file():
-        raise FileError(f"{path}: not there, so no records can be added; restore it, or start the run anew")
+        raise FileError(f"{path}: not there, so no records can be added; put it back, or start the run anew with --overwrite")
     with _damage(path), netCDF4.Dataset(path) as dataset:
         times = np.asarray(dataset["time"][:], dtype=float)
         keep = int(np.count_nonzero(times <= keep_until))
@@ -162,8 +162,8 @@ def _damage(path: Path) -> Iterator[None]:
     except (OSError, RuntimeError, IndexError, KeyError, AttributeError) as failure:
         said = str(failure).strip("'\"") or type(failure).__name__
         raise FileError(
-            f"{path}: cannot be read as a record file of this program ({said}); move it away and resume, "
-            "which starts a new one at the checkpoint, or start the run anew"
+            f"{path}: cannot be read as a record file of this program ({said}); "
+            "put a sound copy in its place, or start the run anew with --overwrite"
         ) from failure
 
 

@@ -12,7 +12,7 @@ from output import output_examples
 from output.output_examples import START, attributes, compliance, extremes, plane, python, sphere, state, tool, write_fields
 
 from swe import constants
-from swe.errors import FileError
+from swe.errors import FileError, InputError
 from swe.output.catalogue import DATUMS, velocity_names
 from swe.output.fields import FieldsFile
 
@@ -131,6 +131,12 @@ def test_single_precision_and_choice_of_names(tmp_path):
         assert dataset["level"].dtype == np.float32 and dataset["depth"].dtype == np.float64
         assert not {"x_velocity", "normal_velocity", "highest_level"} & set(dataset.variables)
         assert np.array_equal(dataset["level"][2], state(mesh, 240.0)[0].astype(np.float32))
+
+
+def test_an_unknown_field_is_refused_with_those_allowed_and_makes_no_file(tmp_path):
+    with pytest.raises(InputError, match="'vorticity' is not known; allowed are level, velocity, normal_velocity, extremes"):
+        write_fields(tmp_path / "fields.nc", plane(), [], names=("level", "vorticity"))
+    assert list(tmp_path.iterdir()) == []
 
 
 def test_resuming_drops_later_records_and_equals_an_unbroken_file(tmp_path):
@@ -266,7 +272,7 @@ def test_a_full_disk_is_one_clear_line_and_earlier_records_stay(tmp_path):
 import resource, sys
 from pathlib import Path
 from output.output_examples import *
-from swe.errors import FileError
+from swe.errors import FileError, InputError
 mesh, path = plane(), Path(sys.argv[1])
 number = 0
 try:

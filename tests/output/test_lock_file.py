@@ -1,9 +1,11 @@
 """One writer at a time: living holders refused, dead ones replaced, no race."""
 
+import fcntl
 import json
 import os
 import signal
 import subprocess
+import threading
 
 import pytest
 from output.output_examples import kill, python, start
@@ -115,6 +117,21 @@ sys.stdin.read()
     for rival in rivals:
         rival.communicate()
     assert sorted(said) == ["lost"] * 5 + ["won"]
+
+
+def test_claims_of_one_host_come_one_at_a_time(tmp_path):
+    """Whoever judges a lock dead and replaces it must not be overtaken in between."""
+    handle = os.open(tmp_path, os.O_RDONLY)
+    fcntl.flock(handle, fcntl.LOCK_EX)
+    lock = OutputLock(tmp_path)
+    claim = threading.Thread(target=lock.acquire)
+    claim.start()
+    claim.join(0.2)
+    assert claim.is_alive() and not lock.path.exists()
+    os.close(handle)
+    claim.join(30)
+    assert lock.path.exists()
+    lock.release()
 
 
 def test_without_hard_links_it_still_excludes(tmp_path, monkeypatch):
