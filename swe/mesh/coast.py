@@ -23,6 +23,9 @@ LONGEST_CHORD = 0.05
 """Degrees. Sides of a polygon are straight in longitude and latitude; cut to this length, they leave their image in the
 chart by less than 2 m up to latitude 60, far below any cell."""
 
+SEAM_DIGITS = 10
+"""Decimals of a degree (10 micrometres) to which longitudes are rounded, so that both sides of the date line meet."""
+
 
 def read_water(path: str | Path, surface: Surface) -> shapely.Geometry:
     """Read the water of a basin as one valid Polygon or MultiPolygon, in input coordinates. Not collective.
@@ -43,10 +46,19 @@ def read_water(path: str | Path, surface: Surface) -> shapely.Geometry:
 def charted(water: shapely.Geometry, surface: Surface, chart: Chart) -> shapely.Geometry:
     """Return the water in the chart (m), outer rings counter-clockwise: water lies to the left of every ring. Not collective."""
     if surface.spherical:
-        water = shapely.segmentize(water, LONGEST_CHORD)
-    # Joined again: parts that were split at the date line touch only here.
-    flat = shapely.union_all(shapely.get_parts(shapely.transform(water, chart.to_chart)))
-    return shapely.orient_polygons(shapely.make_valid(flat))
+        water = shapely.segmentize(_joined_at_date_line(water, chart), LONGEST_CHORD)
+    flat = shapely.make_valid(shapely.transform(water, chart.to_chart), method="structure", keep_collapsed=False)
+    return shapely.orient_polygons(flat)
+
+
+def _joined_at_date_line(water: shapely.Geometry, chart: Chart) -> shapely.Geometry:
+    """Return the water with longitudes near those of the chart, parts that were split at the date line joined again."""
+    middle = chart.from_chart(np.zeros((1, 2)))[0, 0]
+
+    def near(points: np.ndarray) -> np.ndarray:
+        return np.column_stack([np.round(near_longitude(points[:, 0], middle), SEAM_DIGITS), points[:, 1]])
+
+    return shapely.union_all(shapely.get_parts(shapely.transform(water, near)))
 
 
 def chart_of(water: shapely.Geometry, surface: Surface) -> Chart:
@@ -122,7 +134,8 @@ def _members(path: Path, item: dict, name: str, where: str) -> list:
 
 def _shape(path: Path, where: str, item: dict) -> shapely.Geometry:
     try:
-        geometry = shapely.force_2d(shapely.geometry.shape(item))
+        with np.errstate(invalid="ignore"):  # numbers that are not finite are refused below
+            geometry = shapely.force_2d(shapely.geometry.shape(item))
     except (ValueError, TypeError, AttributeError, IndexError, shapely.errors.ShapelyError) as failure:
         reason = str(failure).splitlines()[0] if str(failure) else type(failure).__name__
         raise InputError(
