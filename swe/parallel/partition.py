@@ -40,7 +40,7 @@ def partition(mesh: Mesh, count: int) -> np.ndarray:
         return np.zeros(mesh.n_faces, dtype=np.int32)
     graph = neighbours(mesh)
     weights = np.diff(graph.indptr)
-    _, owner = pymetis.part_graph(count, xadj=graph.indptr, adjncy=graph.indices, vweights=weights.tolist())
+    _, owner = pymetis.part_graph(count, pymetis.CSRAdjacency(graph.indptr, graph.indices), vweights=weights.tolist())
     owner = np.asarray(owner, dtype=np.int32)
     empty = np.setdiff1d(np.arange(count), owner)
     if empty.size:
