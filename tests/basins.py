@@ -6,7 +6,7 @@ from mpi4py import MPI
 from swe.dynamics.diagnostics import volume_anomaly
 from swe.dynamics.physics import FPlane, NoRotation, Physics
 from swe.mesh.lattice import hexagons_in
-from swe.mesh.topology import Mesh, with_depth
+from swe.mesh.topology import COAST, Mesh, with_depth
 from swe.parallel.reductions import Assembly, total
 from swe.parallel.schwarz import Agreement
 from swe.simulation.basin import cut_and_build
@@ -35,10 +35,27 @@ def hump(mesh: Mesh, height=1.0, radius=60e3, at=(180e3, 160e3)) -> np.ndarray:
     return height * np.exp(-((x - at[0]) ** 2 + (y - at[1]) ** 2) / (2 * radius**2))
 
 
+def along_normals(mesh: Mesh, vector: np.ndarray) -> np.ndarray:
+    """Return the components along the edge normals, (ne,), of vectors (ne, 2), (ne, 3) or (2,) given at the edges."""
+    vector = np.atleast_2d(vector)
+    return (mesh.edge_normal[:, : vector.shape[1]] * vector).sum(axis=1)
+
+
 class Rig:
     """A basin on the ranks of `on` with a hump in it, ready to step."""
 
-    def __init__(self, mesh: Mesh, count: int, overlap: int, physics: Physics, height=1.0, radius=60e3, at=(180e3, 160e3), on=comm, **options):
+    def __init__(
+        self,
+        mesh: Mesh,
+        count: int,
+        overlap: int,
+        physics: Physics,
+        height=1.0,
+        radius=60e3,
+        at=(180e3, 160e3),
+        on=comm,
+        **options,
+    ):
         self.share, self.basin = cut_and_build(on, mesh if on.rank == 0 else None, count, overlap, physics, **options)
         for part, state in zip(self.basin.parts, self.basin.states, strict=True):
             state.eta[:] = hump(part.mesh, height, radius, at)
@@ -52,6 +69,21 @@ class Rig:
         for number in range(steps):
             self.reports.append(self.basin.advance(stepper, agreement, number * step, step, scale))
             scale = self.reports[-1].scale
+        return self
+
+    def fill(self, level, current=None):
+        """Set every state: `level` (nf,), m, and `current` (ne,), m s-1 along the normals, functions of a mesh; None: rest."""
+        for part, state in zip(self.basin.parts, self.basin.states, strict=True):
+            mesh = part.mesh
+            state.eta[:] = level(mesh)
+            state.u[:] = 0.0 if current is None else current(mesh)
+            state.u[mesh.n_inner :][mesh.border_kind == COAST] = 0.0
+        return self
+
+    def scatter(self, eta: np.ndarray | None, u: np.ndarray | None):
+        """Set every state from rank 0's arrays of the whole mesh. Collective."""
+        for state, level, velocity in zip(self.basin.states, self.faces.scatter(eta), self.edges.scatter(u), strict=True):
+            state.eta[:], state.u[:] = level, velocity
         return self
 
     def eta(self) -> np.ndarray | None:
