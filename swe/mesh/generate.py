@@ -40,6 +40,9 @@ from swe.mesh.voronoi import plane_mesh, sphere_mesh
 ROUGH_PIXELS = 40_000
 """Pixels of the first look at the spacing, which only decides how many coarser levels there are."""
 
+MOST_SEGMENTS = 500_000
+"""Segments of the coast at most, so that a spacing in the wrong unit is refused before it fills the memory."""
+
 
 def generate(
     water: shapely.Geometry,
@@ -86,7 +89,7 @@ def generate(
 
 def _basin(water: shapely.Geometry, finest: float) -> Basin:
     shapely.prepare(water)
-    return Basin(water, true_shoreline(water, finest / 2))
+    return Basin(water, true_shoreline(water, max(finest / 2, water.length / MOST_SEGMENTS)))
 
 
 def _field(
@@ -110,7 +113,7 @@ def _field(
         return spacing_field(raster, spacing.wanted(site) * stretch, growth), distance
 
     rough, distance = tabulate(raster_over(basin.water.bounds, 0.0, spacing.finest, ROUGH_PIXELS))
-    levels = coarse_levels(expected_faces(rough, distance > 0), rough.steepness())
+    levels = coarse_levels(expected_faces(rough, distance > 0, basin.water.area), rough.steepness())
     margin = BAND * 2**levels * float(rough.at(basin.coast.start).max())
     return *tabulate(raster_over(basin.water.bounds, margin, spacing.finest)), levels
 

@@ -75,7 +75,7 @@ def lay_out(basin: Basin, field: SpacingField, distance: np.ndarray, levels: int
     sweeps     on the final level; seed: of the first positions
     Raises MeshError when the spacing gives no or far too many faces.
     """
-    number = expected_faces(field, distance > 0)
+    number = expected_faces(field, distance > 0, basin.water.area)
     finest = float(field.at(basin.coast.start).min())
     for level in range(levels, -1, -1):
         spacing = _times(2**level, field)
@@ -99,9 +99,14 @@ def coarse_levels(number: float, steepness: float) -> int:
     return int(min(by_number, by_growth))
 
 
-def expected_faces(field: SpacingField, wet: np.ndarray) -> float:
-    """Return the expected number of faces, or raise MeshError when no mesh can have it. Not collective."""
-    number = expected(field, wet.reshape(field.values.shape))
+def expected_faces(field: SpacingField, wet: np.ndarray, area: float) -> float:
+    """Return the expected number of faces, or raise MeshError when no mesh can have it. Not collective.
+
+    wet (ny * nx,) bool of the field's pixels; area of the water in the chart, m2: pixels may miss narrow water
+    """
+    wet = wet.reshape(field.values.shape)
+    wet = wet if wet.any() else np.ones_like(wet)
+    number = expected(field, wet) * area / (np.count_nonzero(wet) * field.raster.pixel**2)
     found = f"the spacing ({field.values.min():.6g} to {field.values.max():.6g} m) gives about {number:.3g} faces in the basin"
     if number < 3:
         raise MeshError(f"{found}; at least 3 are needed: choose a finer spacing, or check the unit of the coastline")

@@ -33,6 +33,9 @@ STEEPEST = 0.5
 MOST_PIXELS = 2_000_000
 """Pixels of the raster at most: 16 MB an array."""
 
+FEWEST_PIXELS = 50
+"""Pixels along the longer side at least, so that the shape of the water is seen however coarse the spacing."""
+
 DIRECTIONS = ((0, 1), (1, 0), (1, 1), (1, -1), (1, 2), (2, 1), (1, -2), (2, -1))
 """Half of the 16 directions (rows, columns); the other half are their opposites."""
 
@@ -170,7 +173,7 @@ def raster_over(box: tuple[float, float, float, float], margin: float, finest: f
     """Return pixels over a box and a margin: half the finest spacing, or larger so that there are `most`. Not collective."""
     west, south = box[0] - margin, box[1] - margin
     width, height = box[2] + margin - west, box[3] + margin - south
-    pixel = max(finest / 2, float(np.sqrt(width * height / most)))
+    pixel = max(min(finest / 2, max(width, height) / FEWEST_PIXELS), float(np.sqrt(width * height / most)))
     return Raster(west, south, pixel, (int(np.ceil(height / pixel)) + 2, int(np.ceil(width / pixel)) + 2))
 
 

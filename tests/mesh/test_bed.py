@@ -32,7 +32,7 @@ def grid(
     path, x, y, values, names=("x", "y", "depth"), axes=None, attributes=None, dimensions="yx", kind="f8", **packing
 ):  # fmt: skip
     """Write a small grid file; `axes` are the attributes of x and y, `attributes` those of the variable."""
-    axes = axes if axes is not None else ({"standard_name": "projection_x_coordinate"}, {"standard_name": "projection_y_coordinate"})
+    axes = axes if axes is not None else [{"standard_name": f"projection_{letter}_coordinate"} for letter in "xy"]
     with netCDF4.Dataset(path, "w") as file:
         for name, axis, found in zip(names, (x, y), axes):
             file.createDimension(name, len(axis))
@@ -92,7 +92,8 @@ def test_direction_from_the_name_where_attributes_are_silent(tmp_path, name, sig
 
 def test_units_of_depth_and_coordinates(tmp_path):
     axes = ({"axis": "X", "units": "km"}, {"axis": "Y", "units": "km"})
-    path = grid(tmp_path / "d.nc", X / 1000, Y / 1000, on(X, Y) / 0.3048, ("e", "n", "depth"), axes, {"positive": "down", "units": "ft"})
+    feet = {"positive": "down", "units": "ft"}
+    path = grid(tmp_path / "d.nc", X / 1000, Y / 1000, on(X, Y) / 0.3048, ("e", "n", "depth"), axes, feet)
     assert read_grid(path, Plane(), BOX).at(PLACES)[0] == pytest.approx(slope(*PLACES.T), rel=1e-9)
 
 
@@ -119,7 +120,7 @@ def test_extra_dimension_of_one_and_named_variable(tmp_path):
 @pytest.mark.parametrize("start, middle", [(0, 359.2), (-180, -0.8), (0, 180.3), (-180, -179.7), (-180, 100), (0, -100)])
 @pytest.mark.parametrize("flip", [1, -1])
 def test_either_convention_of_longitude(tmp_path, start, middle, flip):
-    """A global grid serves a basin across Greenwich and one across the date line; a smooth periodic depth, interpolation error only."""
+    """A global grid serves basins across Greenwich and the date line; a smooth periodic depth leaves interpolation error only."""
 
     def depth(lon, lat):
         return 50 + 10 * np.cos(np.radians(lon)) + 0.1 * lat

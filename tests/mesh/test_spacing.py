@@ -200,6 +200,8 @@ def test_repair_adds_and_takes_out_centres_where_pushing_does_not_help():
     assert len(cured) == len(places) + report.added - report.removed
 
 
-@pytest.mark.parametrize("number, steepness, levels", [(200, 0.0, 0), (1100, 0.0, 1), (100_000, 0.0, 4), (100_000, 0.15, 2), (1e5, 0.4, 0)])
+@pytest.mark.parametrize(
+    "number, steepness, levels", [(200, 0.0, 0), (1100, 0.0, 1), (100_000, 0.0, 4), (100_000, 0.15, 2), (100_000, 0.4, 0)]
+)
 def test_levels_for_a_number_of_faces_and_a_steepness(number, steepness, levels):
     assert coarse_levels(number, steepness) == levels
