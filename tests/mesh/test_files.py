@@ -1,6 +1,6 @@
 """Mesh files: the same numbers back, readable by others, refused when damaged.
 
-Sources: UGRID Conventions 1.0 and CF Conventions 1.11, judged by programs of others: ugrid-checker, compliance-checker and xugrid.
+Sources: UGRID Conventions 1.0 and CF Conventions 1.11, judged by programs of others: ugrid-checker, compliance-checker, xugrid.
 compliance-checker knows no cf_role but those of discrete sampling, so its lines about cf_role are false alarms.
 """
 
