@@ -40,6 +40,8 @@ def main(arguments: list[str] | None = None) -> int:
     # One thread per rank: four ranks with two threads each on two cores ran 26 times slower. The user's own choice stands.
     for name in ("OPENBLAS_NUM_THREADS", "OMP_NUM_THREADS", "MKL_NUM_THREADS"):
         os.environ.setdefault(name, "1")
+    # A result may be read while its run goes on; HDF5 reads this when netCDF4 is first imported.
+    os.environ.setdefault("HDF5_USE_FILE_LOCKING", "FALSE")
     options = parser().parse_args(arguments)
     import importlib
 

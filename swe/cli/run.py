@@ -9,14 +9,13 @@ def run(options) -> int:
     from mpi4py import MPI
 
     from swe.case.reading import read_case
-    from swe.parallel.ranks import agreed, install_abort_hook
+    from swe.parallel.ranks import install_abort_hook, on_root
     from swe.simulation.run import run_case
 
     comm = MPI.COMM_WORLD
     install_abort_hook(comm)
-    case = None
-    with agreed(comm, "reading the case"):
-        case = read_case(options.case)
+    # Rank 0 reads, so that a file that is edited meanwhile cannot give the ranks different cases.
+    case = comm.bcast(on_root(comm, "reading the case", read_case, options.case), root=0)
     folder = Path(options.results) if options.results else Path("results") / case.name
     summary = run_case(comm, case, folder, options.resume, options.overwrite, options.quiet)
     if comm.rank == 0:
