@@ -30,18 +30,23 @@ def mesh_for(case, folder: Path, say: Callable[[str], None]) -> Mesh:
 
     Raises InputError or MeshError when an input is wrong or the mesh must not be used.
     """
+    mesh = kept_mesh(case, folder, say)
+    return make_mesh(case, folder / FILE, say) if mesh is None else mesh
+
+
+def kept_mesh(case, folder: Path, say: Callable[[str], None] = lambda text: None) -> Mesh | None:
+    """Return the case's ready mesh, or the one kept in `folder` if it fits the case, else None. Not collective."""
     if case.mesh.file is not None:
         mesh = read_mesh(case.mesh.file)
         check_invariants(mesh)
         return _with_positive_depth(mesh, case)
     kept = folder / FILE
-    key = inputs_key(case)
-    if _key_of(kept) == key:
+    if _key_of(kept) == inputs_key(case):
         try:
             return read_mesh(kept)
         except SweError:
             say(f"{kept}: damaged; the mesh is made again")
-    return make_mesh(case, kept, say)
+    return None
 
 
 def make_mesh(case, path: Path, say: Callable[[str], None]) -> Mesh:

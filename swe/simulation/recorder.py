@@ -12,10 +12,11 @@ from collections.abc import Sequence
 import numpy as np
 
 from swe.dynamics import diagnostics
+from swe.errors import InputError
 from swe.mesh.topology import Mesh
 from swe.output import checkpoint
+from swe.output.fields import CHOICES, FieldsFile
 from swe.output.fields import Extremes as FileExtremes
-from swe.output.fields import FieldsFile
 from swe.output.folder import ResultFolder
 from swe.output.ledger import LedgerFile
 from swe.output.records import file_attributes
@@ -31,6 +32,16 @@ FLUSH = 256
 """Rows kept in memory at most; arbitrary, a few kB."""
 
 USUAL_FIELDS = ("level", "velocity", "normal_velocity", "extremes")
+
+
+def fields_of(case) -> tuple[str, ...]:
+    """Return what the fields of a case hold. Not collective. Raises InputError for a name that is not written."""
+    names = case.output.fields or USUAL_FIELDS
+    unknown = [name for name in names if name not in CHOICES]
+    if unknown:
+        where = case.where("output", "fields")
+        raise InputError(f"{where}: {', '.join(unknown)} is not written; allowed are {', '.join(CHOICES)}")
+    return names
 
 
 class Recorder:
@@ -50,7 +61,7 @@ class Recorder:
             "ledger": round(case.output.ledger_every / step),
             "checkpoint": round(case.checkpoint.every / step) if case.checkpoint.every else 0,
         }
-        self.names = case.output.fields or USUAL_FIELDS
+        self.names = fields_of(case)
         self._mesh, self._sampling = mesh, sampling
         faces = self.comm.bcast(sampling.face if self.root else None, root=0)
         self.currents = Currents(setup.basin.parts)

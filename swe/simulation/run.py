@@ -26,7 +26,7 @@ from swe.case.case import place_of
 from swe.simulation.meshing import mesh_for
 from swe.simulation.progress import Progress, Reading
 from swe.simulation.progress import clock as model_clock
-from swe.simulation.recorder import Recorder
+from swe.simulation.recorder import Recorder, fields_of
 from swe.simulation.setup import Setup, prepare
 from swe.simulation.start import begin, put
 
@@ -220,6 +220,7 @@ def run_case(comm: MPI.Comm, case, folder: Path, resume: bool, overwrite: bool, 
         if comm.rank == 0 and not quiet:
             print(text, flush=True)
 
+    on_root(comm, "checking the case", fields_of, case)
     result = on_root(comm, "claiming the result folder", _claim, folder, resume, overwrite)
     recorder = None
     try:

@@ -30,6 +30,9 @@ from swe.steppers.two_stage import TwoStage
 EXPLICIT_OVERLAP = 1
 """Layers that an explicit stepper needs: a stage reaches one ring, and every edge must have one owner."""
 
+EXPLICIT_LIMIT = 2.0 * math.sqrt(2.0)
+"""Largest z of the classical Runge-Kutta method on the imaginary axis (Hairer & Wanner 1996, section IV.2)."""
+
 
 @dataclass(frozen=True)
 class Plan:
@@ -111,7 +114,11 @@ def agreement_of(case) -> Agreement:
 def plan_of(case, mesh: Mesh, ranks: int) -> Plan:
     """Return what would run on `ranks` ranks. Not collective; needs the whole mesh."""
     depth = mesh.depth[mesh.edge_faces[: mesh.n_inner]].mean(axis=1)
-    radius = GravityBound(mesh, mesh.n_faces, mesh.n_inner, case.earth.gravity)(depth)
+    return plan_for(case, GravityBound(mesh, mesh.n_faces, mesh.n_inner, case.earth.gravity)(depth), ranks)
+
+
+def plan_for(case, radius: float, ranks: int) -> Plan:
+    """Return what would run with a wave operator of this spectral radius, s-1. Not collective."""
     step = case.time.step
     count = case.subdomains.count or ranks * case.subdomains.per_rank
     return Plan(count, _overlap(case, radius * step), radius, step, round(case.time.duration / step))
