@@ -76,15 +76,25 @@ class Basin:
         return cKDTree(self.centres * self.metres).query(np.asarray(places) * self.metres)[1]
 
     def passage(self) -> tuple[float, float]:
-        """Return where the longest island comes nearest to another coast; without islands, the smallest face. Not collective."""
+        """Return the middle of the strait worth a closer look; without islands, of the smallest face. Not collective.
+
+        Of all islands the one whose gap to another coast is smallest against the length of shore along which it stays below
+        twice that: a long narrow strait counts more than a rock near a cape.
+        """
         shores = self._shores()
         if len(shores) < 2:
             return tuple(self.centres[np.argmin(self.area)])
-        island = shores[1]
-        others = np.concatenate(shores[:1] + shores[2:])
-        distance, other = cKDTree(self.nodes[others] * self.metres).query(self.nodes[island] * self.metres)
-        here = np.argmin(distance)
-        return tuple(0.5 * (self.nodes[island[here]] + self.nodes[others[other[here]]]))
+        found = [self._gap(shores, k) for k in range(1, len(shores))]
+        return tuple(min(found, key=lambda gap: gap[0])[1])
+
+    def _gap(self, shores: list[np.ndarray], island: int) -> tuple[float, np.ndarray]:
+        """Return the smallest gap of an island to any other coast over the nodes along it, and the middle of the gap."""
+        own = self.nodes[shores[island]]
+        other = self.nodes[np.concatenate(shores[:island] + shores[island + 1 :])]
+        distance, partner = cKDTree(other * self.metres).query(own * self.metres)
+        here = int(np.argmin(distance))
+        along = np.count_nonzero(distance < 2.0 * distance[here])
+        return distance[here] / along, 0.5 * (own[here] + other[partner[here]])
 
     def _shores(self) -> list[np.ndarray]:
         """Return the node indices of each connected coast, longest first."""

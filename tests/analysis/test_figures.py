@@ -12,7 +12,7 @@ from matplotlib.image import imread
 from matplotlib.quiver import QuiverKey
 from matplotlib.text import Text
 
-from swe.analysis.figures import NAMES, draw_all
+from swe.analysis.figures import NAMES, draw, draw_all
 from swe.analysis.figures import page as page_module
 from swe.analysis.figures.depth import passage_window
 from swe.analysis.figures.levels import arrow_faces, snapshot_records
@@ -117,7 +117,7 @@ def test_the_users_style_is_left_alone(tmp_path):
     folder = write_result(tmp_path / "case", plane_basin())
     with matplotlib.rc_context({"font.size": 31.0, "text.usetex": True}):
         before = dict(matplotlib.rcParams)
-        draw_all(folder)
+        draw(read_result(folder), "work", tmp_path)
         assert dict(matplotlib.rcParams) == before
 
 
@@ -150,6 +150,13 @@ def test_no_folder_is_a_file_error(tmp_path):
         draw_all(tmp_path / "nothing")
     with pytest.raises(FileError, match="fields.nc: no such file"):
         draw_all(tmp_path)
+
+
+def test_folder_that_cannot_be_written_is_named(tmp_path):
+    folder = write_result(tmp_path / "case", plane_basin())
+    (tmp_path / "figures").write_text("a file where the folder should be")
+    with pytest.raises(FileError, match="work.png: the figure cannot be written"):
+        draw(read_result(folder), "work", tmp_path / "figures")
 
 
 def test_matplotlib_is_not_loaded_before_a_figure_is_drawn():

@@ -12,7 +12,7 @@ from swe.analysis.figures.palette import HEIGHT, INK, MOMENT, signed
 ARROWS_ACROSS = 30
 """Arrows along the longer side of a map at most; more of them turn into a texture."""
 
-FAST = 98.0
+FAST = 95.0
 """Percentile of the speeds whose arrow fills 1.6 raster squares; arbitrary."""
 
 

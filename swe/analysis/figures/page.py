@@ -17,6 +17,7 @@ from matplotlib.ticker import FuncFormatter, MaxNLocator
 
 from swe.analysis.figures.palette import INK, LAND
 from swe.constants import CAUTION, DEGREE, EARTH_RADIUS
+from swe.errors import FileError
 
 DOTS_PER_INCH = 150
 
@@ -61,9 +62,12 @@ def _wrapped(text: str, width: float) -> str:
 
 
 def save(figure: Figure, path: Path) -> Path:
-    """Write the figure as PNG and return its path. Not collective."""
-    path.parent.mkdir(parents=True, exist_ok=True)
-    figure.savefig(path, dpi=DOTS_PER_INCH, facecolor="white", metadata={"Software": None, "Description": CAUTION})
+    """Write the figure as PNG and return its path. Not collective. Raises FileError."""
+    try:
+        path.parent.mkdir(parents=True, exist_ok=True)
+        figure.savefig(path, dpi=DOTS_PER_INCH, facecolor="white", metadata={"Software": None, "Description": CAUTION})
+    except OSError as failure:
+        raise FileError(f"{path}: the figure cannot be written ({failure.strerror or failure}); check the folder") from None
     return path
 
 
