@@ -15,7 +15,7 @@ from matplotlib.text import Text
 from swe.analysis.figures import NAMES, draw, draw_all
 from swe.analysis.figures import page as page_module
 from swe.analysis.figures.depth import passage_window
-from swe.analysis.figures.levels import arrow_faces, snapshot_records
+from swe.analysis.figures.levels import arrow_faces, snapshot_records, weighted_quantile
 from swe.analysis.figures.work import phase_table
 from swe.analysis.result import read_result
 from swe.constants import CAUTION
@@ -168,6 +168,11 @@ def test_snapshots_end_with_the_last_record():
     assert snapshot_records(49) == [12, 24, 36, 48]
     assert snapshot_records(3) == [0, 1, 2]
     assert snapshot_records(5)[-1] == 4
+
+
+def test_colours_of_the_snapshots_cover_the_area_and_not_the_number_of_faces():
+    values, areas = np.array([5.0, 1.0, 3.0, 9.0]), np.array([1.0, 6.0, 2.0, 1.0])
+    assert [weighted_quantile(values, areas, part) for part in (0.5, 0.6, 0.7, 0.8, 0.9, 0.95, 1.0)] == [1, 1, 3, 3, 5, 9, 9]
 
 
 def test_close_view_shows_the_strait_of_the_island(tmp_path):

@@ -51,19 +51,21 @@ def _energy(axes, ledger, summary) -> None:
 def _errors(axes, ledger, summary) -> None:
     for name, label, colour, style in (
         ("mismatch", "mismatch of the subdomains", SERIES[2], "-"),
-        ("time_error", "error indicator of a step", SERIES[1], "--"),
+        ("time_error", "change by the last stage of a step", SERIES[1], "--"),
     ):
         values = ledger.series[name]
         # zero has no place on a logarithmic axis
         shown = np.isfinite(values) & (values > 0.0)
         if shown.any():
             axes.plot(ledger.times[shown], values[shown], color=colour, linestyle=style, label=f"{label} ({ledger.units[name]})")
-    axes.set(ylabel=f"difference as a level ({ledger.units['mismatch']})", title="agreement of the subdomains, error of a step")
+    axes.set(
+        ylabel=f"difference as a level ({ledger.units['mismatch']})", title="agreement of the subdomains, last stage of a step"
+    )
     if axes.lines:
         axes.set_yscale("log")
         axes.legend(loc="best")
     else:
-        axes.text(0.5, 0.5, "nothing to show: one subdomain, no indicator", transform=axes.transAxes, ha="center")
+        axes.text(0.5, 0.5, "nothing to show: one subdomain, one stage", transform=axes.transAxes, ha="center")
 
 
 def _products(axes, ledger, summary) -> None:

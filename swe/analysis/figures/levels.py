@@ -15,6 +15,10 @@ ARROWS_ACROSS = 30
 FAST = 95.0
 """Percentile of the speeds whose arrow fills 1.6 raster squares; arbitrary."""
 
+PART = 0.98
+"""Part of the basin's area whose levels lie within the colours of the snapshots: a corner of a bay that stands out would
+bleach all else; the colour bar then ends in points. Arbitrary."""
+
 
 @styled
 def draw_highest(result, path):
@@ -53,7 +57,7 @@ def draw_snapshots(result, path):
     rows = -(-len(records) // 2)
     figure = sheet(result.title, "Water level and currents", 12.0, rows * (map_height(basin, 5.2) + 0.45) + 1.2)
     panels = figure.subplots(rows, 2, sharex=True, sharey=True, squeeze=False).ravel()
-    limit = max(np.abs(levels).max(), 1e-12)
+    limit = max(weighted_quantile(np.abs(levels).max(axis=0), basin.area, PART), 1e-12)
     norm = Normalize(-limit, limit)
     chosen, arrows = arrow_faces(basin), []
     # not the very largest: one jet in a strait would shrink all other arrows to dots
@@ -75,7 +79,9 @@ def draw_snapshots(result, path):
             arrows[0], 0.93, 0.07, unit, f"{unit:g} m/s", labelpos="W", fontproperties={"size": 8}, zorder=9
         )
         key.text.set_path_effects(HALO)
-    figure.colorbar(cells, ax=list(panels), label="water level above the datum (m)", pad=0.01, fraction=0.025, aspect=38)
+    beyond = "both" if np.abs(levels).max() > limit else "neither"
+    label = "water level above the datum (m)"
+    figure.colorbar(cells, ax=list(panels), label=label, extend=beyond, pad=0.01, fraction=0.025, aspect=38)
     return save(figure, path)
 
 
@@ -84,6 +90,13 @@ def snapshot_records(count: int, panels: int = 4) -> list[int]:
     if count <= panels:
         return list(range(count))
     return [round((count - 1) * part / panels) for part in range(1, panels + 1)]
+
+
+def weighted_quantile(values: np.ndarray, weights: np.ndarray, part: float) -> float:
+    """Return the least value that at least `part` of the weight does not exceed. Not collective."""
+    order = np.argsort(values)
+    covered = np.cumsum(weights[order]) / np.sum(weights)
+    return float(values[order][min(int(np.searchsorted(covered, part * (1.0 - 1e-12))), len(order) - 1)])
 
 
 def arrow_faces(basin) -> np.ndarray:
