@@ -39,7 +39,7 @@ def agreed(comm: MPI.Comm, doing: str):
 
 
 def on_root(comm: MPI.Comm, doing: str, work, *arguments):
-    """Run `work(*arguments)` on rank 0 and return its result there, None elsewhere; its error is raised everywhere. Collective."""
+    """Run `work(*arguments)` on rank 0; return its result there, None elsewhere; raise its error everywhere. Collective."""
     result = None
     with agreed(comm, doing):
         if comm.rank == 0:

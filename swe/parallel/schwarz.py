@@ -46,7 +46,7 @@ class StepReport:
 
     mismatch    of the accepted values, m; repeats spent
     scale       largest energy norm of dt F over the subdomains
-    change      largest |eta^{n+1} - eta of the stage before|, m: the free time error indicator
+    change      largest |eta^{n+1} - eta of the stage before|, m: the free time error indicator; NaN when the stepper has none
     error       largest estimated error of an action, energy norm
     speed, highest, lowest, thinnest   largest |u|, m s-1; largest and smallest level, m; smallest total depth, m
     stop        some rank was asked to stop
@@ -115,7 +115,7 @@ class Basin:
             first_scale = max([first_scale] + [result.scale for result in results])
             worst = max([worst] + [result.error for result in results])
             reasons += [result.reason for result in results if result.reason]
-        report = self._close(results, before, latest, first_scale, worst, reasons, stop, 0)
+        report = self._close(stepper, results, before, latest, first_scale, worst, reasons, stop, 0)
         while report.mismatch > agreement.tolerance and report.repeats < agreement.repeats:
             with self.phases("stages"):
                 results = [
@@ -124,7 +124,7 @@ class Basin:
                 ]
             latest = self._publish(start, results, step)
             reasons += [result.reason for result in results if result.reason]
-            report = self._close(results, before, latest, first_scale, worst, reasons, stop, report.repeats + 1)
+            report = self._close(stepper, results, before, latest, first_scale, worst, reasons, stop, report.repeats + 1)
         if report.mismatch > agreement.tolerance:
             raise NumericalFailure(
                 f"the subdomains disagree by {report.mismatch:.3g} m after {report.repeats} repeats: allowed is "
@@ -136,7 +136,7 @@ class Basin:
     def _publish(self, start: list[State], results: list[StageResult], step: float) -> list[State]:
         """Make the owners' u and transports known everywhere and update every level held."""
         us, transports = [], []
-        for part, patch, result in zip(self.parts, self.patches, results, strict=True):
+        for part, result in zip(self.parts, results, strict=True):
             u, transport = np.zeros(part.mesh.n_edges), np.zeros(part.mesh.n_edges)
             u[: part.ms], transport[: part.ms] = result.u, result.transport
             us.append(u)
@@ -150,7 +150,7 @@ class Basin:
             for begun, patch, u, transport in zip(start, self.patches, us, transports, strict=True)
         ]
 
-    def _close(self, results, before, latest, scale, worst, reasons, stop, repeats) -> StepReport:
+    def _close(self, stepper, results, before, latest, scale, worst, reasons, stop, repeats) -> StepReport:
         """One reduction: everything that the ranks must know alike at the end of a step."""
         local = np.full(10, -np.inf)
         local[0] = bool(reasons)
@@ -187,9 +187,10 @@ class Basin:
             ).on_all_ranks()
         if -dry <= 0.0:
             raise NumericalFailure(
-                f"a face ran dry ({self._place_of_dry(latest)}): total depth must stay above 0 m because wetting and drying is not "
-                "computed; raise the least depth, shorten the step, or reduce the forcing"
+                f"a face ran dry ({self._place_of_dry(latest)}): total depth must stay above 0 m, because wetting and drying "
+                "is not computed; raise the least depth, shorten the step, or reduce the forcing"
             ).on_all_ranks()
+        change = change if stepper.indicates else np.nan
         return StepReport(mismatch, repeats, scale, change, worst, speed, highest, -deepest, -dry, bool(stopped))
 
     def _first_reason(self, reasons: list[str]) -> str:

@@ -101,8 +101,11 @@ def beyond(patch: Patch, inside: State, outside: State) -> State:
 
 
 class Stepper(Protocol):
+    """Guidelines above. `indicates`: the change by the last stage is of the size of the step's error in time."""
+
     stages: int
     order: int
+    indicates: bool
 
     def stage(
         self, index: int, patch: Patch, work: dict, start: State, latest: State, time: float, step: float, scale: float

@@ -34,6 +34,7 @@ class OneStage:
     largest: int
     stages: int = 1
     order: int = 2
+    indicates: bool = False
 
     def stage(
         self, index: int, patch: Patch, work: dict, start: State, latest: State, time: float, step: float, scale: float

@@ -26,6 +26,7 @@ class RungeKutta4:
 
     stages: int = 4
     order: int = 4
+    indicates: bool = False
 
     def stage(
         self, index: int, patch: Patch, work: dict, start: State, latest: State, time: float, step: float, scale: float

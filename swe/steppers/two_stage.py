@@ -39,6 +39,7 @@ class TwoStage:
     largest: int
     stages: int = 2
     order: int = 2
+    indicates: bool = True
 
     def stage(
         self, index: int, patch: Patch, work: dict, start: State, latest: State, time: float, step: float, scale: float
