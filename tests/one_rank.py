@@ -22,7 +22,8 @@ def main(folder: str, seconds: float, test: str) -> None:
     os.dup2(page.fileno(), 2)
     faulthandler.register(signal.SIGTERM, file=page, chain=True)
     faulthandler.dump_traceback_later(seconds, exit=True, file=page)
-    code = pytest.main([test, "-q", "--slow", "--no-header", "-p", "no:cacheprovider", "-o", "faulthandler_timeout=0", "-o", "timeout=0"])
+    options = "-q --slow --no-header -p no:cacheprovider -o faulthandler_timeout=0 -o timeout=0".split()
+    code = pytest.main([test, *options])
     sys.stdout.flush()
     if code:
         # Time for the others to fail as well and say so; they may wait for this rank until then.

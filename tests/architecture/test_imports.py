@@ -129,7 +129,7 @@ def test_a_planted_breach_is_found(tmp_path, declared, place, code):
 @pytest.mark.parametrize(
     ("place", "code"),
     [
-        ("mesh/good.py", "from swe.errors import MeshError\nfrom swe import __version__\nfrom . import topology\nimport math, numpy"),
+        ("mesh/good.py", "from swe.errors import MeshError\nfrom swe import __version__\nfrom . import topology\nimport numpy"),
         ("parallel/good.py", "from swe.steppers.contract import State\nfrom mpi4py import MPI"),
         ("simulation/good.py", "from swe.output.fields import Fields\nimport swe.constants"),
     ],

@@ -104,7 +104,7 @@ def test_the_stamp_is_void_when_a_pin_or_the_folder_changes(copy):
 def test_missing_system_parts_are_named_in_one_line_with_the_command(copy):
     bare = copy / "bin"
     bare.mkdir()
-    for name in ("bash", "cat", "cut", "dirname", "env", "flock", "grep", "id", "mkdir", "mktemp", "paste", "rm", "sed", "sha256sum"):
+    for name in "bash cat cut dirname env flock grep id mkdir mktemp paste rm sed sha256sum".split():
         (bare / name).symlink_to(shutil.which(name))
     copy.chmod(0o777)
     nobody = 65534
