@@ -43,6 +43,7 @@ class Counts:
     messages: int = 0
     bytes_sent: int = 0
     largest_mismatch: float = 0.0
+    mismatch_sum: float = 0.0
     largest_error: float = 0.0
     wall_seconds: float = 0.0
 
@@ -111,6 +112,7 @@ class Run:
                 self.scale = report.scale
                 self.spent.repeats += report.repeats
                 self.spent.largest_mismatch = max(self.spent.largest_mismatch, report.mismatch)
+                self.spent.mismatch_sum += report.mismatch
                 self.spent.largest_error = max(self.spent.largest_error, report.error)
                 with basin.phases("output"):
                     self.recorder.see(self.number, self.time, report, {"products": self.spent.products, "repeats": self.spent.repeats})
@@ -157,7 +159,7 @@ class Run:
         )
         return Counts(
             now.products + products, now.repeats, now.messages + messages, now.bytes_sent + sent, now.largest_mismatch,
-            now.largest_error, now.wall_seconds + clock.monotonic() - self.began,
+            now.mismatch_sum, now.largest_error, now.wall_seconds + clock.monotonic() - self.began,
         )  # fmt: skip
 
     def summary(self, finished: bool) -> dict:
@@ -187,6 +189,7 @@ class Run:
             "simulated_over_real": self.time / max(spent.wall_seconds, 1e-9),
             "mass_drift_relative": self.recorder.row.get("mass_drift", 0.0),
             "largest_mismatch": spent.largest_mismatch,
+            "localisation_error_metres": spent.mismatch_sum,
             "largest_action_error": spent.largest_error,
             "repeats": spent.repeats,
             "products": spent.products,
