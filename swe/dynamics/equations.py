@@ -1,15 +1,15 @@
 """Rates of change of level and velocity: the rotating shallow-water equations in vector-invariant form.
 
     d eta/dt = -div F                                                            F = h_e u
-    d u/dt   = (q T F + T (q F))/2  -  grad( K + g eta )  +  tau_n/(rho h_e)  -  C_d |u| u/h_e  +  viscosity
+    d u/dt   = (q T F + T (q F))/2  -  grad( K + g eta + Phi )  +  tau_n/(rho h_e)  -  C_d |u| u/h_e  +  viscosity
 
     h = D + eta   depth, m; h_e two-face mean           q = mean over two nodes of (f + zeta)_v / h_v, m-1 s-1
     zeta = curl u, s-1                                  K = kinetic energy per mass, m2 s-2
-    T    tangential operator: T F is the transport along t
+    T    tangential operator: T F is the transport along t     Phi = heads of the forcing, m2 s-2
 
 The rotation term is the energy-conserving form of Ringler et al. 2010 (J. Comput. Phys. 229, 3065): with
 E = sum_e l d h_e u^2/2 + sum_i A_i g eta^2/2 the two terms T q and q T do no work because W is antisymmetric, and
-grad(K + g eta) against div F cancel by summation by parts. So dE/dt = 0 at round-off without wind and friction.
+grad(K + g eta) against div F cancel by summation by parts. So dE/dt = 0 at round-off without forcing and friction.
 
 Coast, free slip: u = 0 on border edges, zeta = 0 at coast nodes, h_v from the wet faces. The rates of border edges are zero.
 Depth must be positive on all faces; nothing here checks it.
@@ -17,6 +17,7 @@ Depth must be positive on all faces; nothing here checks it.
 
 from __future__ import annotations
 
+from collections.abc import Iterable
 from dataclasses import dataclass
 from functools import cached_property
 
@@ -24,7 +25,7 @@ import numpy as np
 from scipy import sparse
 
 from swe.dynamics.drag import drag
-from swe.dynamics.forcing import Forcing
+from swe.dynamics.forcing import Forcing, Head, Stress
 from swe.dynamics.forcing.wind import wind_acceleration
 from swe.dynamics.physics import Physics
 from swe.dynamics.viscosity import viscosity
@@ -37,7 +38,7 @@ class Water:
     """Everything that the rates depend on, on one (restricted) mesh.
 
     coriolis_node   (nn,) f, s-1
-    forcing         the stresses that act on the surface; they add up
+    forcing         the stresses and heads that act on the water; they add up
     """
 
     mesh: Mesh
@@ -56,8 +57,8 @@ class Water:
         flow = h_edge * u
         zeta = op.curl @ u
         rate = rotation(op, self.potential_vorticity(self.coriolis_node + zeta, h_node), flow)
-        rate -= bernoulli(op, physics.gravity, eta, u)
-        if self.forcing:
+        rate -= bernoulli(op, physics.gravity, eta, u, self.heads(time))
+        if self.stressed:
             rate += wind_acceleration(self.stress(time), physics.density, h_edge)
         if physics.bottom_drag:
             rate += drag(physics.bottom_drag, u, op.tangential @ u, h_edge)
@@ -81,7 +82,24 @@ class Water:
 
     def stress(self, time: float) -> np.ndarray:
         """Return the sum of all surface stresses along n, (ne,), Pa. Not collective."""
-        return sum((forcing.stress(time) for forcing in self.forcing), np.zeros(self.mesh.n_edges))
+        return sum((forcing.stress(time) for forcing in self._stresses), np.zeros(self.mesh.n_edges))
+
+    def heads(self, time: float) -> list[np.ndarray]:
+        """Return the heads of the forcing, each (nf,), m2 s-2; none for water that has none. Not collective."""
+        return [forcing.head(time) for forcing in self._heads]
+
+    @property
+    def stressed(self) -> bool:
+        """Whether any forcing is a stress."""
+        return bool(self._stresses)
+
+    @cached_property
+    def _stresses(self) -> tuple[Stress, ...]:
+        return tuple(forcing for forcing in self.forcing if isinstance(forcing, Stress))
+
+    @cached_property
+    def _heads(self) -> tuple[Head, ...]:
+        return tuple(forcing for forcing in self.forcing if isinstance(forcing, Head))
 
     @cached_property
     def _means(self) -> sparse.csr_array:
@@ -102,8 +120,10 @@ def rotation(op: Operators, q: np.ndarray, flow: np.ndarray) -> np.ndarray:
     return rate
 
 
-def bernoulli(op: Operators, gravity: float, eta: np.ndarray, u: np.ndarray) -> np.ndarray:
-    """Return grad( K + g eta ) on edges, (ne,), m s-2. Not collective."""
+def bernoulli(op: Operators, gravity: float, eta: np.ndarray, u: np.ndarray, heads: Iterable[np.ndarray] = ()) -> np.ndarray:
+    """Return grad( K + g eta + sum of heads ) on edges, (ne,), m s-2. Not collective."""
     head = op.kinetic @ (u * u)
     head += gravity * eta
+    for other in heads:
+        head += other
     return op.grad @ head

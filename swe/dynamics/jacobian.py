@@ -7,8 +7,9 @@ With F = h_e u, c_ee' = (q_e + q_e') T_ee' / 2, and M for means (M_e faces to ed
                    + (a + b T) du + s M_e d eta + V du
     G_ev         = ( diag(T F) N + T diag(F) N )_ev / 2,        q_v = (f + zeta)_v / h_v,   K' du = 2 kinetic (u du)
 
-a, b, s: derivatives of bottom drag and wind stress by u_n, u_t and h_e (`drag`); V: `viscosity`. Every entry is a sum
-of few products of known vectors, so the pattern is found once, and the data are
+a, b, s: derivatives of bottom drag and wind stress by u_n, u_t and h_e (`drag`); V: `viscosity`. Heads of the forcing do not
+depend on the state and have no part. Every entry is a sum of few products of known vectors, so the pattern is found once, and
+the data are
 
     data = P z
 
@@ -154,7 +155,7 @@ class JacobianFactory:
         turn, corner = self._turn_at.size, self._corner_at.size
         lengths = {"turn": turn, "turn u": turn, "corner": corner, "corner q": corner, "own": ms, "one": 1}
         lengths |= {"u": mesh.n_edges, "h": mesh.n_edges}
-        if water.physics.bottom_drag or water.forcing:
+        if water.physics.bottom_drag or water.stressed:
             lengths["by h"] = ms
         assembly = Assembly((mf + ms, mf + ms), lengths)
         self._level_rows(assembly)

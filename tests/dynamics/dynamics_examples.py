@@ -1,5 +1,7 @@
 """Waters and states on the small meshes of the operators' tests."""
 
+from dataclasses import dataclass
+
 import numpy as np
 from operators.operator_meshes import MESHES, rough
 
@@ -12,18 +14,34 @@ from swe.operators import build
 GRAVITY, DENSITY = 9.81, 1025.0
 
 
-def water_on(mesh, law=None, drag=0.0, viscosity=0.0, wind=None):
-    """The water of a mesh; by default rotating as the mesh suggests, without friction."""
+@dataclass(frozen=True, eq=False)
+class Swing:
+    """A head that swings about a pattern on the faces, (nf,), m2 s-2, with a period of 1000 s."""
+
+    pattern: np.ndarray
+
+    @classmethod
+    def on(cls, mesh, size):
+        """Rough, and the same at a place whatever the mesh."""
+        return cls(size * np.cos(mesh.face_xyz @ [1.0, 2.0, 3.0]))
+
+    def head(self, time):
+        return np.cos(2 * np.pi * time / 1000.0) * self.pattern
+
+
+def water_on(mesh, law=None, drag=0.0, viscosity=0.0, wind=None, head=0.0):
+    """The water of a mesh; by default rotating as the mesh suggests, without friction. `head` size of a Swing, m2 s-2."""
     if law is None:
         law = Sphere(7.292e-5, 0.3) if mesh.spherical else FPlane(1e-4)
     physics = Physics(GRAVITY, DENSITY, drag, viscosity, law)
     forcing = (ConstantWind.on(mesh, *wind),) if wind else ()
+    forcing += (Swing.on(mesh, head),) if head else ()
     return Water(mesh, build(mesh), physics, coriolis_at_nodes(mesh, law), forcing)
 
 
 def everything_on(mesh):
     """All terms at once."""
-    return water_on(mesh, drag=0.0025, viscosity=50.0, wind=(0.3, -0.1))
+    return water_on(mesh, drag=0.0025, viscosity=50.0, wind=(0.3, -0.1), head=2.0)
 
 
 def rough_mesh(name):

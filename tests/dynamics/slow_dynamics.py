@@ -17,9 +17,13 @@ def rates(water, eta, u, time):
     zeta = slow.vorticity(mesh, u)
     q = slow.node_to_edge(mesh, (water.coriolis_node + zeta) / slow.face_to_node(mesh, h))
     rate = 0.5 * (q * slow.tangential(mesh, flow) + slow.tangential(mesh, q * flow))
-    rate -= slow.gradient(mesh, slow.kinetic(mesh, u) + physics.gravity * eta)
+    head = slow.kinetic(mesh, u) + physics.gravity * eta
     for forcing in water.forcing:
-        rate += forcing.stress(time) / (physics.density * h_edge)
+        if hasattr(forcing, "head"):
+            head = head + forcing.head(time)
+        if hasattr(forcing, "stress"):
+            rate += forcing.stress(time) / (physics.density * h_edge)
+    rate -= slow.gradient(mesh, head)
     rate -= physics.bottom_drag * np.hypot(u, slow.tangential(mesh, u)) * u / h_edge
     rate += physics.lateral_viscosity * (slow.gradient(mesh, slow.divergence(mesh, u)) - slow.gradient_along(mesh, zeta))
     rate[mesh.n_inner :] = 0.0

@@ -20,6 +20,7 @@ TERMS = {
     "drag": lambda mesh: water_on(mesh, drag=0.0025),
     "wind": lambda mesh: water_on(mesh, wind=(0.3, -0.2)),
     "viscosity": lambda mesh: water_on(mesh, viscosity=500.0),
+    "head": lambda mesh: water_on(mesh, head=2.0),
     "everything": everything_on,
 }
 

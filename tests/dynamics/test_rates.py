@@ -7,7 +7,7 @@ Sources: checks of the energy form, Thuburn et al. 2009 (J. Comput. Phys. 228, 8
 import numpy as np
 import pytest
 from dynamics import slow_dynamics
-from dynamics.dynamics_examples import GRAVITY, close, everything_on, flat_mesh, random_state, rough_mesh, water_on
+from dynamics.dynamics_examples import GRAVITY, Swing, close, everything_on, flat_mesh, random_state, rough_mesh, water_on
 from operators.operator_meshes import MESHES, part_of
 
 from swe.dynamics.drag import drag
@@ -104,6 +104,35 @@ def test_winds_add_up():
     plain = water_on(mesh)
     both = Water(mesh, plain.operators, plain.physics, plain.coriolis_node, (one, two))
     close(both.stress(0.0), ConstantWind.on(mesh, 0.1, 0.2).stress(0.0), 1e-15)
+
+
+@pytest.mark.parametrize("name", NAMES)
+def test_water_whose_level_answers_a_head_stays_at_rest_exactly(name):
+    """g eta + Phi = 0 on a rough bed; by substitution. 500 s later the head has turned, and pushes twice as hard."""
+    water = water_on(rough_mesh(name), head=2.0)
+    eta = -water.heads(0.0)[0] / GRAVITY
+    level, velocity = water.rates(eta, np.zeros(water.mesh.n_edges), 0.0)
+    assert not level.any() and np.abs(velocity).max() < 1e-15 * np.abs(water.operators.grad @ (GRAVITY * eta)).max()
+    close(water.rates(eta, 0.0 * velocity, 500.0)[1], -2.0 * water.operators.grad @ (GRAVITY * eta), 1e-14)
+
+
+def test_a_forcing_may_be_stress_and_head_at_once():
+    """By definition: the rates of one forcing that has both are those of two that have one each."""
+
+    class Both(Swing):
+        def stress(self, time):
+            return wind.stress(time)
+
+    mesh = rough_mesh("lake")
+    plain = water_on(mesh)
+    wind, swing = ConstantWind.on(mesh, 0.1, 0.2), Swing.on(mesh, 2.0)
+    eta, u = random_state(mesh)
+    one, two = (
+        Water(mesh, plain.operators, plain.physics, plain.coriolis_node, forcing).rates(eta, u, 70.0)[1]
+        for forcing in ((Both(swing.pattern),), (wind, swing))
+    )
+    assert np.array_equal(one, two)
+    assert not np.array_equal(one, plain.rates(eta, u, 70.0)[1])
 
 
 def test_wind_on_the_sphere_blows_east_and_north():
