@@ -20,7 +20,7 @@ from __future__ import annotations
 
 import numpy as np
 
-from swe.mesh.topology import Mesh
+from swe.mesh.topology import Mesh, gradient_distance
 
 ROUND_OFF = 8.0 * np.finfo(float).eps
 """Error of t^2 - 4 s over t^2: it must not lower the bound where the roots are equal; it raises it by 2e-8 at most."""
@@ -30,7 +30,7 @@ class GravityBound:
     """The bound for the first `mf` faces and the first `ms` edges of a mesh, for any depth."""
 
     def __init__(self, mesh: Mesh, mf: int, ms: int, gravity: float):
-        self._shape = gravity * mesh.edge_length[:ms] / mesh.edge_distance[:ms]
+        self._shape = gravity * (mesh.edge_length / gradient_distance(mesh))[:ms]
         self._faces = mesh.edge_faces[:ms]
         self._area = mesh.face_area[:mf]
         nodes = np.unique(mesh.edge_nodes[:ms])

@@ -11,6 +11,8 @@ The rotation term is the energy-conserving form of Ringler et al. 2010 (J. Compu
 E = sum_e l d h_e u^2/2 + sum_i A_i g eta^2/2 the two terms T q and q T do no work because W is antisymmetric, and
 grad(K + g eta) against div F cancel by summation by parts. So dE/dt = 0 at round-off without forcing and friction.
 
+Open boundary: the level of outer faces is given (`opening`), and no difference of K acts across it.
+
 Coast, free slip: u = 0 on border edges, zeta = 0 at coast nodes, h_v from the wet faces. The rates of border edges are zero.
 Depth must be positive on all faces; nothing here checks it.
 """
@@ -27,9 +29,10 @@ from scipy import sparse
 from swe.dynamics.drag import drag
 from swe.dynamics.forcing import Forcing, Head, Stress
 from swe.dynamics.forcing.wind import wind_acceleration
+from swe.dynamics.opening import Opening
 from swe.dynamics.physics import Physics
 from swe.dynamics.viscosity import viscosity
-from swe.mesh.topology import Mesh
+from swe.mesh.topology import Mesh, still_edges
 from swe.operators import Operators
 
 
@@ -39,6 +42,7 @@ class Water:
 
     coriolis_node   (nn,) f, s-1
     forcing         the stresses and heads that act on the water; they add up
+    opening         the open boundaries of this mesh, or None
     """
 
     mesh: Mesh
@@ -46,6 +50,7 @@ class Water:
     physics: Physics
     coriolis_node: np.ndarray
     forcing: tuple[Forcing, ...] = ()
+    opening: Opening | None = None
 
     def rates(self, eta: np.ndarray, u: np.ndarray, time: float) -> tuple[np.ndarray, np.ndarray]:
         """Return (d eta/dt (nf,) m s-1, du/dt (ne,) m s-2) at model time `time` (s). Not collective.
@@ -53,6 +58,8 @@ class Water:
         Rates are those of the whole mesh on every face, and every edge between faces, that keep all their neighbours.
         """
         op, physics = self.operators, self.physics
+        if self.opening:
+            eta = self.opening.settled(eta, time)
         h_node, h_edge = self.thickness(eta)
         flow = h_edge * u
         zeta = op.curl @ u
@@ -64,7 +71,9 @@ class Water:
             rate += drag(physics.bottom_drag, u, op.tangential @ u, h_edge)
         if physics.lateral_viscosity:
             rate += viscosity(op, physics.lateral_viscosity, u, zeta)
-        rate[self.mesh.n_inner :] = 0.0
+        if self.opening:
+            self.opening.radiate(rate, u, time)
+        rate[self._still] = 0.0
         return continuity(op, flow), rate
 
     def transport(self, eta: np.ndarray, u: np.ndarray) -> np.ndarray:
@@ -92,6 +101,10 @@ class Water:
     def stressed(self) -> bool:
         """Whether any forcing is a stress."""
         return bool(self._stresses)
+
+    @cached_property
+    def _still(self) -> slice | np.ndarray:
+        return np.flatnonzero(still_edges(self.mesh)) if self.opening else slice(self.mesh.n_inner, None)
 
     @cached_property
     def _stresses(self) -> tuple[Stress, ...]:
@@ -122,8 +135,11 @@ def rotation(op: Operators, q: np.ndarray, flow: np.ndarray) -> np.ndarray:
 
 def bernoulli(op: Operators, gravity: float, eta: np.ndarray, u: np.ndarray, heads: Iterable[np.ndarray] = ()) -> np.ndarray:
     """Return grad( K + g eta + sum of heads ) on edges, (ne,), m s-2. Not collective."""
-    head = op.kinetic @ (u * u)
-    head += gravity * eta
+    speed = op.kinetic @ (u * u)
+    head = gravity * eta
     for other in heads:
         head += other
-    return op.grad @ head
+    if op.grad_inside is op.grad:
+        head += speed
+        return op.grad @ head
+    return op.grad @ head + op.grad_inside @ speed

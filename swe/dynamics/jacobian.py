@@ -34,6 +34,7 @@ from swe.dynamics.bounds import GravityBound
 from swe.dynamics.drag import drag_derivatives
 from swe.dynamics.equations import Water
 from swe.dynamics.viscosity import viscosity_matrix
+from swe.mesh.topology import gradient_distance
 from swe.operators.products import Assembly, Places, Refill, terms
 from swe.operators.sparse import compressed
 
@@ -88,14 +89,14 @@ class JacobianFactory:
         self._turn = op.tangential[:ms]
         self._turn_at = Places.of(self._turn)
         self._row_count = np.diff(self._turn.indptr)
-        self._lift, self._lift_own = _split(-2.0 * (op.grad @ op.kinetic), self._turn_at, mesh.n_inner)
+        self._lift, self._lift_own = _split(-2.0 * (op.grad_inside @ op.kinetic), self._turn_at, mesh.n_inner)
         viscous = viscosity_matrix(op, water.physics.lateral_viscosity)
         self._viscous, self._viscous_own = _split(viscous, self._turn_at, mesh.n_inner)
         self._corner_at, self._corner = _corners(water, self._turn_at)
         self._refill = self._assemble()
         self._refill.segment["one"][:] = 1.0
         self._waves = self._gravity_places()
-        self._shape_weights = mesh.edge_length[:ms] * mesh.edge_distance[:ms]
+        self._shape_weights = (mesh.edge_length * gradient_distance(mesh))[:ms]
 
     def at(self, eta: np.ndarray, u: np.ndarray, time: float) -> CurrentOperator:
         """Return the Jacobian at (eta (nf,), u (ne,)) and model time `time` (s); later calls leave it alone. Not collective."""
@@ -112,6 +113,8 @@ class JacobianFactory:
         if water.physics.lateral_viscosity:
             z["turn"] += self._viscous
             z["own"] += self._viscous_own
+        if water.opening:
+            z["own"] -= water.opening.damping(ms)
         if "by h" in z:
             self._friction(u, h_edge[:ms], time)
         area = water.physics.gravity * water.mesh.face_area[: self.mf]

@@ -35,6 +35,9 @@ class WaterPatch:
     def divergence(self, transport: np.ndarray) -> np.ndarray:
         return self.water.operators.div @ transport
 
+    def settled(self, eta: np.ndarray, time: float) -> np.ndarray:
+        return self.water.opening.settled(eta, time) if self.water.opening else eta
+
     def rates(self, state, time: float) -> np.ndarray:
         level, velocity = self.water.rates(state.eta, state.u, time)
         return np.concatenate([level[: self.mf], velocity[: self.ms]])

@@ -11,7 +11,9 @@ With the energy weights M = diag(g A_i, l_e d_e D_e) the scaled matrix S = M^(1/
 
 and is skew bit by bit, for variable depth, spacing and f: linear energy |M^(1/2) x|^2 / 2 is conserved.
 D is the resting depth, or the depth at a given level (`refresh`): still skew, only the scalings change. Values beyond the
-first mf faces and ms edges are taken as zero. Source: method.md, section 4; W: Thuburn et al. 2009, J. Comput. Phys. 228, 8321.
+first mf faces and ms edges are taken as zero, and so is the level of outer faces beyond an open boundary: what is given
+there enters through the remainder. A radiating boundary adds -c/(d/2) on the diagonal of its edges (`opening`) and S is
+dissipative. Source: method.md, section 4; W: Thuburn et al. 2009, J. Comput. Phys. 228, 8321.
 """
 
 from __future__ import annotations
@@ -24,6 +26,7 @@ from scipy import sparse
 from swe.dynamics.bounds import GravityBound
 from swe.dynamics.equations import Water
 from swe.errors import NumericalFailure
+from swe.mesh.topology import gradient_distance
 from swe.operators.sparse import sides
 
 
@@ -34,6 +37,8 @@ class Pattern:
     gravity, gravity_factor, gravity_edge             positions in the data; -+s (g/A)^(1/2); edge whose b multiplies
     rotation, rotation_factor, column_edge            positions in the data, row after row; -W/2; edge of the column
     row_count                                         (ms,) number of `rotation` entries of each edge
+    damping, damping_rate                             positions in the data; -c/(d/2) of radiating edges
+    distance                                          (ms,) d, d/2 across an open boundary, m
     """
 
     indptr: np.ndarray
@@ -45,6 +50,9 @@ class Pattern:
     rotation_factor: np.ndarray
     column_edge: np.ndarray
     row_count: np.ndarray
+    damping: np.ndarray
+    damping_rate: np.ndarray
+    distance: np.ndarray
 
 
 @dataclass(eq=False)
@@ -53,7 +61,7 @@ class WaveOperator:
 
     size        mf + ms
     weights     (size,) square roots of (g A_i, l_e d_e D_e)
-    skew        True: S^T = -S bit by bit
+    skew        True: S^T = -S bit by bit; False where a boundary radiates
     matrix      S, (size, size) CSR
     depth_edge  (ms,) D_e, m
     """
@@ -94,8 +102,8 @@ class WaveOperator:
         h_node, h_edge = self.water.thickness(eta)
         self.depth_edge[:] = _wet(mesh, h_edge[: self.ms])
         shape = mesh.edge_length[: self.ms] * self.depth_edge
-        np.sqrt(shape * mesh.edge_distance[: self.ms], out=self.weights[self.mf :])
-        b = np.sqrt(shape / mesh.edge_distance[: self.ms])
+        np.sqrt(shape * pattern.distance, out=self.weights[self.mf :])
+        b = np.sqrt(shape / pattern.distance)
         self.matrix.data[pattern.gravity] = pattern.gravity_factor * b[pattern.gravity_edge]
         if pattern.rotation.size:
             q = self.water.potential_vorticity(self.water.coriolis_node, h_node)[: self.ms]
@@ -127,38 +135,47 @@ def wave_operator(water: Water, mf: int, ms: int, rotation: bool, eta: np.ndarra
     """
     mesh = water.mesh
     pattern = _pattern(water, mf, ms, rotation and bool(np.any(water.coriolis_node)))
+    # what radiates out to sea is lost to the basin: then L is dissipative
+    skew = not pattern.damping.size
     matrix = sparse.csr_array((np.zeros(pattern.indices.size), pattern.indices, pattern.indptr), shape=(mf + ms, mf + ms))
     weights = np.empty(mf + ms)
     weights[:mf] = np.sqrt(water.physics.gravity * mesh.face_area[:mf])
     bound = GravityBound(mesh, mf, ms, water.physics.gravity)
-    operator = WaveOperator(water, mf, ms, pattern, bound, weights, np.empty(ms), matrix)
+    operator = WaveOperator(water, mf, ms, pattern, bound, weights, np.empty(ms), matrix, skew)
+    matrix.data[pattern.damping] = pattern.damping_rate
     operator.refresh(np.zeros(mesh.n_faces) if eta is None else eta)
     return operator
 
 
 def _pattern(water: Water, mf: int, ms: int, rotation: bool) -> Pattern:
     edge, face, sign = sides(water.mesh)
-    use = edge < ms
+    use = (edge < ms) & ~water.mesh.face_outer[face]
     edge, face, sign = edge[use], face[use], sign[use]
     factor = sign * np.sqrt(water.physics.gravity / water.mesh.face_area[face])
     turn = water.operators.weights[:ms, :ms].tocoo() if rotation else sparse.coo_array((ms, ms))
-    rows = np.concatenate((face, mf + edge, mf + turn.row))
-    columns = np.concatenate((mf + edge, face, mf + turn.col))
+    loss = water.opening.damping(ms) if water.opening else np.zeros(ms)
+    damped = np.flatnonzero(loss)
+    rows = np.concatenate((face, mf + edge, mf + turn.row, mf + damped))
+    columns = np.concatenate((mf + edge, face, mf + turn.col, mf + damped))
     order = np.lexsort((columns, rows))
     place = np.empty(order.size, dtype=np.intp)
     place[order] = np.arange(order.size)
-    n = edge.size
-    by_row = np.argsort(place[2 * n :])
+    n, m = edge.size, 2 * edge.size + turn.nnz
+    turned = place[2 * n : m]
+    by_row = np.argsort(turned)
     return Pattern(
         indptr=np.concatenate(([0], np.cumsum(np.bincount(rows, minlength=mf + ms)))).astype(np.int32),
         indices=columns[order].astype(np.int32),
         gravity=place[: 2 * n],
         gravity_factor=np.concatenate((-factor, factor)),
         gravity_edge=np.concatenate((edge, edge)),
-        rotation=place[2 * n :][by_row],
+        rotation=turned[by_row],
         rotation_factor=-0.5 * turn.data[by_row],
         column_edge=turn.col[by_row].astype(np.intp),
         row_count=np.bincount(turn.row, minlength=ms),
+        damping=place[m:],
+        damping_rate=-loss[damped],
+        distance=gradient_distance(water.mesh)[:ms],
     )
 
 

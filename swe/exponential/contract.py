@@ -49,3 +49,11 @@ class Action:
     products: int
     converged: bool
     reason: str
+
+
+def fitting(operator: Operator, method: str) -> str:
+    """Return `method` where it fits the operator, "arnoldi" where it needs a skew one and this is not. Not collective.
+
+    A subdomain whose boundary radiates is dissipative; its neighbours are still skew and keep the cheaper recurrence.
+    """
+    return method if operator.skew else "arnoldi"

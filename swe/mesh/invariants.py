@@ -24,7 +24,7 @@ from scipy.sparse.csgraph import connected_components
 from swe.errors import MeshError
 from swe.mesh.plane import Geometry, PlaneGeometry
 from swe.mesh.sphere import SphereGeometry, dot
-from swe.mesh.topology import COAST, CUT, OPEN, Mesh, displacement
+from swe.mesh.topology import COAST, CUT, Mesh, displacement
 
 ROUND_OFF = 1e-10
 """Largest relative error of identities that hold exactly but for round-off: a few hundred operations of 1e-16, enlarged by
@@ -123,13 +123,13 @@ def _check_indices(mesh: Mesh) -> None:
             raise MeshError(f"mesh: {name} runs from {index.min()} to {index.max()}; allowed is {low} to {high - 1}; {TURNED}")
     held = mesh.edge_faces >= 0
     inner, border = held[: mesh.n_inner], held[mesh.n_inner :]
-    turned = np.isin(mesh.border_kind, (COAST, OPEN)) & ~border[:, 0]
+    turned = (mesh.border_kind == COAST) & ~border[:, 0]
     wrong = ~np.concatenate([inner.all(axis=1), (border.sum(axis=1) == 1) & ~turned])
     if wrong.any():
         edge = wrong.argmax()
         raise MeshError(f"mesh: edge {edge} has faces {mesh.edge_faces[edge]}, which its kind does not allow; {TURNED}")
-    if not np.isin(mesh.border_kind, (COAST, CUT, OPEN)).all():
-        raise MeshError(f"mesh: border_kind holds {np.unique(mesh.border_kind)}; allowed are {COAST}, {CUT}, {OPEN}; {TURNED}")
+    if not np.isin(mesh.border_kind, (COAST, CUT)).all():
+        raise MeshError(f"mesh: border_kind holds {np.unique(mesh.border_kind)}; allowed are {COAST}, {CUT}; {TURNED}")
 
 
 def _check_positive(mesh: Mesh) -> None:

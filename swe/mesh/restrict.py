@@ -60,6 +60,7 @@ def restrict(mesh: Mesh, faces: np.ndarray) -> Mesh:
         n_inner=n_inner,
         border_kind=kind[edges[n_inner:]],
         depth=mesh.depth[faces],
+        face_outer=mesh.face_outer[faces],
         face_id=mesh.face_id[faces],
         edge_id=mesh.edge_id[edges],
         node_id=mesh.node_id[nodes],

@@ -13,6 +13,10 @@ Conventions (method.md, section 2; Thuburn et al. 2009; Ringler et al. 2010):
     kite (v, i): the part of face i that is nearest node v: centre, foot on one edge, node, foot on the next;
        the foot is the crossing of edge and line of centres. Kites of a face sum to its area.
 
+Open boundary: a row of outer faces lies beyond it. Their level is given from outside, so an outer face is to the water
+what the face of a neighbouring subdomain is; the edges between inner and outer faces carry water, those between two outer
+faces do not.
+
 Edges that separate two faces of the mesh come first; border edges follow. On the sphere lengths are great-circle
 lengths and areas spherical areas.
 
@@ -39,9 +43,6 @@ COAST = 0
 CUT = 1
 """Border kind: water of the whole mesh beyond, which this restricted mesh does not hold."""
 
-OPEN = 2
-"""Border kind: open sea beyond (reserved)."""
-
 
 @dataclass(frozen=True, eq=False)
 class Mesh:
@@ -61,15 +62,16 @@ class Mesh:
     face_area       (nf,)
     node_area       (nn,)   sum of the kites of wet faces of the WHOLE mesh
     kite_area       (nn, 3) kite of node v in face node_faces[v, k]; 0 where there is none
-    edge_faces      (ne, 2) first, second; -1 where there is no face in this mesh: second on COAST and OPEN, either on CUT
+    edge_faces      (ne, 2) first, second; -1 where there is no face in this mesh: second on COAST, either on CUT
     edge_nodes      (ne, 2)
     face_edges      (nf, m) counter-clockwise, -1 behind the last
     face_nodes      (nf, m) counter-clockwise; edge face_edges[i, k] runs from face_nodes[i, k] to face_nodes[i, k+1]
     node_faces      (nn, 3) counter-clockwise, -1 where there is no wet face in this mesh
     node_coast      (nn,)   bool: fewer than three wet faces in the WHOLE mesh
     n_inner         number of edges with two faces; they come first
-    border_kind     (ne - n_inner,) int8: COAST, CUT or OPEN
+    border_kind     (ne - n_inner,) int8: COAST or CUT
     depth           (nf,)   resting depth below the datum, m, positive down
+    face_outer      (nf,)   bool: beyond an open boundary; its level is given from outside, never computed
     face_id, edge_id, node_id   index in the whole mesh
     """
 
@@ -94,6 +96,7 @@ class Mesh:
     n_inner: int
     border_kind: np.ndarray
     depth: np.ndarray
+    face_outer: np.ndarray
     face_id: np.ndarray
     edge_id: np.ndarray
     node_id: np.ndarray
@@ -132,6 +135,40 @@ def with_depth(mesh: Mesh, depth: np.ndarray) -> Mesh:
     if bad.any():
         raise MeshError(f"the depth of face {bad.argmax()} is {depth[bad.argmax()]}: give a finite number of metres everywhere")
     return replace(mesh, depth=depth)
+
+
+def with_outer(mesh: Mesh, outer: np.ndarray) -> Mesh:
+    """Return the same mesh with the faces `outer` (nf,) bool beyond its open boundaries. Not collective."""
+    return replace(mesh, face_outer=np.asarray(outer, dtype=bool).copy())
+
+
+def open_edges(mesh: Mesh) -> tuple[np.ndarray, np.ndarray, np.ndarray, np.ndarray]:
+    """Return (edge, inner face, outer face, sign) of every edge across an open boundary. Not collective.
+
+    sign is +1 where the edge's normal points out to sea, -1 where it points in.
+    """
+    first, second = mesh.edge_faces[: mesh.n_inner].T
+    edge = np.flatnonzero(mesh.face_outer[first] != mesh.face_outer[second])
+    outward = mesh.face_outer[second[edge]]
+    inner, outer = np.where(outward, (first[edge], second[edge]), (second[edge], first[edge]))
+    return edge, inner, outer, np.where(outward, 1.0, -1.0)
+
+
+def still_edges(mesh: Mesh) -> np.ndarray:
+    """Return (ne,) bool: edges without a current of their own, on the border or between two outer faces. Not collective."""
+    still = np.ones(mesh.n_edges, dtype=bool)
+    still[: mesh.n_inner] = mesh.face_outer[mesh.edge_faces[: mesh.n_inner]].all(axis=1)
+    return still
+
+
+def gradient_distance(mesh: Mesh) -> np.ndarray:
+    """Return (ne,), m: the distance between the two levels that an edge's gradient is made of. Not collective.
+
+    d, but half of it across an open boundary: there the level is given on the boundary line, which is the edge itself.
+    """
+    distance = mesh.edge_distance.copy()
+    distance[open_edges(mesh)[0]] *= 0.5
+    return distance
 
 
 def displacement(mesh: Mesh, start: np.ndarray, end: np.ndarray) -> np.ndarray:

@@ -117,6 +117,7 @@ def _assemble(triangles: Triangles, points: np.ndarray, wet: np.ndarray, geometr
         n_inner=n_inner,
         border_kind=np.full(edge_half.size - n_inner, COAST, dtype=np.int8),
         depth=np.zeros(np.count_nonzero(wet)),
+        face_outer=np.zeros(np.count_nonzero(wet), dtype=bool),
         face_id=_index(np.arange(np.count_nonzero(wet))),
         edge_id=_index(np.arange(edge_half.size)),
         node_id=_index(np.arange(len(node_xyz))),

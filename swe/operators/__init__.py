@@ -23,6 +23,7 @@ class Operators:
 
     div           (nf, ne)  m-1, divergence of a transport
     grad          (ne, nf)  m-1, gradient along n; zero rows on border edges
+    grad_inside   (ne, nf)  m-1, `grad` but for the edges across an open boundary; the same object where there is none
     along         (ne, nn)  m-1, gradient of a node field along t; zero rows on border edges
     curl          (nn, ne)  m-1, vorticity; zero rows at coast nodes (free slip)
     weights       (ne, ne)  W, antisymmetric bit by bit
@@ -35,6 +36,7 @@ class Operators:
 
     div: sparse.csr_array
     grad: sparse.csr_array
+    grad_inside: sparse.csr_array
     along: sparse.csr_array
     curl: sparse.csr_array
     weights: sparse.csr_array
@@ -48,9 +50,11 @@ class Operators:
 def build(mesh: Mesh) -> Operators:
     """Return the operators of `mesh`. Not collective."""
     weights = tangential.antisymmetric_weights(mesh)
+    grad = gradient.gradient(mesh)
     return Operators(
         div=divergence.divergence(mesh),
-        grad=gradient.gradient(mesh),
+        grad=grad,
+        grad_inside=gradient.gradient_inside(mesh, grad),
         along=gradient.gradient_along(mesh),
         curl=vorticity.vorticity(mesh),
         weights=weights,

@@ -7,7 +7,8 @@ s as in `divergence`. W is antisymmetric because the fractions R of one face sum
 from e' to e add up to 1. Antisymmetry is what keeps the Coriolis force from doing work, and the choice of R what keeps
 geostrophic states steady. Each pair is computed once and mirrored, so W + W^T = 0 bit by bit.
 
-Border edges have neither row nor column: u = 0 on a coast.
+Border edges have neither row nor column: u = 0 on a coast. Nor have edges between two outer faces of an open boundary; the
+tangential velocity on an edge across that boundary is then known from its inner side only, which counts twice in T.
 Source: Thuburn, Ringler, Skamarock & Klemp 2009, J. Comput. Phys. 228, 8321.
 """
 
@@ -18,6 +19,7 @@ from itertools import combinations
 import numpy as np
 from scipy import sparse
 
+from swe.mesh.topology import open_edges, still_edges
 from swe.operators.sparse import compressed
 
 
@@ -33,7 +35,7 @@ def kite_fractions(mesh) -> np.ndarray:
 def antisymmetric_weights(mesh) -> sparse.csr_array:
     """Return W, (ne, ne), dimensionless, W^T = -W bit by bit. Not collective."""
     edges = mesh.face_edges
-    inner = (edges >= 0) & (edges < mesh.n_inner)
+    inner = (edges >= 0) & ~still_edges(mesh)[edges]
     outward = np.where(mesh.edge_faces[edges, 0] == np.arange(mesh.n_faces)[:, None], 1.0, -1.0)
     passed = np.cumsum(kite_fractions(mesh), axis=1)
     rows, columns, values = [], [], []
@@ -50,5 +52,7 @@ def antisymmetric_weights(mesh) -> sparse.csr_array:
 def tangential(mesh, weights: sparse.csr_array) -> sparse.csr_array:
     """Return T, (ne, ne), dimensionless: u_t = T u. Not collective."""
     rows = np.repeat(np.arange(mesh.n_edges), np.diff(weights.indptr))
-    values = -weights.data * mesh.edge_length[weights.indices] / mesh.edge_distance[rows]
+    sides = np.ones(mesh.n_edges)
+    sides[open_edges(mesh)[0]] = 2.0
+    values = -sides[rows] * weights.data * mesh.edge_length[weights.indices] / mesh.edge_distance[rows]
     return sparse.csr_array((values, weights.indices, weights.indptr), shape=weights.shape)

@@ -5,7 +5,7 @@
 (t points from the first node to the second, so the second lies to the left of n and n runs counter-clockwise round it.)
 
 Coast, free slip: the water exerts no tangential stress on land, so the vorticity of a coast node is zero: its row is
-empty. Columns of border edges are dropped (u = 0 on a coast; unknown where a restricted mesh is cut).
+empty. So is that of a node between two outer faces of an open boundary, whose currents nobody knows. Columns of border edges are dropped (u = 0 on a coast; unknown where a restricted mesh is cut).
 Source: Ringler et al. 2010, J. Comput. Phys. 229, 3065.
 """
 
@@ -22,6 +22,12 @@ def vorticity(mesh) -> sparse.csr_array:
     edge = np.repeat(np.arange(mesh.n_inner), 2)
     node = mesh.edge_nodes[: mesh.n_inner].ravel()
     sign = np.tile([-1.0, 1.0], mesh.n_inner)
-    wet = ~mesh.node_coast[node]
+    wet = ~(mesh.node_coast | beyond(mesh))[node]
     edge, node, sign = edge[wet], node[wet], sign[wet]
     return compressed(node, edge, sign * mesh.edge_distance[edge] / mesh.node_area[node], (mesh.n_nodes, mesh.n_edges))
+
+
+def beyond(mesh) -> np.ndarray:
+    """Return (nn,) bool: nodes that touch two outer faces or more. Not collective."""
+    present = mesh.node_faces >= 0
+    return (mesh.face_outer[np.where(present, mesh.node_faces, 0)] & present).sum(axis=1) > 1

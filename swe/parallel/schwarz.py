@@ -14,6 +14,7 @@ transmission: only owners' values are ever used by others.
 
 from __future__ import annotations
 
+import math
 from collections.abc import Sequence
 from dataclasses import dataclass
 
@@ -21,6 +22,7 @@ import numpy as np
 from mpi4py import MPI
 
 from swe.errors import NumericalFailure
+from swe.mesh.topology import open_edges
 from swe.parallel.halo import Halo
 from swe.parallel.partition import block, rank_of
 from swe.parallel.phases import Phases
@@ -68,6 +70,7 @@ class Basin:
     """The local subdomains of a rank, their states, and the step that ties them together. Made collectively.
 
     parts     subdomains of this rank; patches   their dynamics, in the same order; count   subdomains in all
+    outflow   (local subdomains,) water that left through open boundaries so far, m3, summed by the owners of the edges
     """
 
     def __init__(self, comm: MPI.Comm, parts: Sequence[Subdomain], patches: Sequence[Patch], count: int, gravity: float):
@@ -80,6 +83,8 @@ class Basin:
         self.states = [State(np.zeros(p.mesh.n_faces), np.zeros(p.mesh.n_edges)) for p in self.parts]
         self.phases = Phases()
         self.products = np.zeros(len(self.parts), dtype=np.int64)
+        self.outflow = np.zeros(len(self.parts))
+        self._open = [_owned_open_edges(part) for part in self.parts]
         self._rim_weight = [_level_per_speed(part, gravity) for part in self.parts]
 
     def scale(self, time: float, step: float) -> float:
@@ -111,7 +116,7 @@ class Basin:
                     stepper.stage(index, patch, own, begun, now, time, step, scale)
                     for patch, own, begun, now in zip(self.patches, work, start, latest, strict=True)
                 ]
-            before, latest = latest, self._publish(start, results, step)
+            before, latest = latest, self._publish(start, results, time, step)
             first_scale = max([first_scale] + [result.scale for result in results])
             worst = max([worst] + [result.error for result in results])
             reasons += [result.reason for result in results if result.reason]
@@ -122,7 +127,7 @@ class Basin:
                     stepper.repeat(patch, own, begun, now, time, step, scale)
                     for patch, own, begun, now in zip(self.patches, work, start, latest, strict=True)
                 ]
-            latest = self._publish(start, results, step)
+            latest = self._publish(start, results, time, step)
             reasons += [result.reason for result in results if result.reason]
             report = self._close(stepper, results, before, latest, first_scale, worst, reasons, stop, report.repeats + 1)
         if report.mismatch > agreement.tolerance:
@@ -131,9 +136,12 @@ class Basin:
                 f"{agreement.tolerance:.3g} m; use a wider overlap, a shorter step, or allow more repeats"
             ).on_all_ranks()
         self.states = latest
+        for number, (part, transport) in enumerate(zip(self.parts, self.transports, strict=True)):
+            edges, _, _, sign = self._open[number]
+            self.outflow[number] += step * math.fsum(sign * part.mesh.edge_length[edges] * transport[edges])
         return report
 
-    def _publish(self, start: list[State], results: list[StageResult], step: float) -> list[State]:
+    def _publish(self, start: list[State], results: list[StageResult], time: float, step: float) -> list[State]:
         """Make the owners' u and transports known everywhere and update every level held."""
         us, transports = [], []
         for part, result in zip(self.parts, results, strict=True):
@@ -146,7 +154,7 @@ class Basin:
         self.products += [result.products for result in results]
         self.transports = transports
         return [
-            State(begun.eta - step * patch.divergence(transport), u)
+            State(patch.settled(begun.eta - step * patch.divergence(transport), time + step), u)
             for begun, patch, u, transport in zip(start, self.patches, us, transports, strict=True)
         ]
 
@@ -226,6 +234,12 @@ def _where(part: Subdomain, face: int, state: State) -> str:
     return (
         f"face {part.mesh.face_id[face]} at {place}, resting depth {part.mesh.depth[face]:.4g} m, level {state.eta[face]:.4g} m"
     )
+
+
+def _owned_open_edges(part: Subdomain):
+    edges, inner, outer, sign = open_edges(part.mesh)
+    owned = np.isin(edges, part.owned_edges)
+    return edges[owned], inner[owned], outer[owned], sign[owned]
 
 
 def _level_per_speed(part: Subdomain, gravity: float) -> np.ndarray:

@@ -8,6 +8,7 @@ from mpi4py import MPI
 
 from swe.dynamics.equations import Water
 from swe.dynamics.forcing import Forcing
+from swe.dynamics.opening import Opening
 from swe.dynamics.patch import WaterPatch
 from swe.dynamics.physics import Physics, coriolis_at_nodes
 from swe.mesh.topology import Mesh
@@ -24,17 +25,29 @@ def no_forcing(mesh: Mesh) -> tuple[Forcing, ...]:
     return ()
 
 
-def water_on(mesh: Mesh, physics: Physics, forcing: ForcingOn = no_forcing) -> Water:
+OpeningOn = Callable[[Mesh], Opening | None]
+"""Makes the open boundaries of one restricted mesh."""
+
+
+def closed(mesh: Mesh) -> None:
+    """Return no open boundary."""
+
+
+def water_on(mesh: Mesh, physics: Physics, forcing: ForcingOn = no_forcing, opening: OpeningOn = closed) -> Water:
     """Return the equations on one (restricted) mesh. Not collective."""
-    return Water(mesh, build(mesh), physics, coriolis_at_nodes(mesh, physics.coriolis), forcing(mesh))
+    return Water(mesh, build(mesh), physics, coriolis_at_nodes(mesh, physics.coriolis), forcing(mesh), opening(mesh))
 
 
-def basin_of(comm: MPI.Comm, share: Share, physics: Physics, forcing: ForcingOn, rotation: bool, refresh: bool) -> Basin:
+def basin_of(
+    comm: MPI.Comm, share: Share, physics: Physics, forcing: ForcingOn, rotation: bool, refresh: bool, opening: OpeningOn = closed
+) -> Basin:
     """Return the basin of this rank. Collective.
 
     rotation  keep rotation in the wave operator; refresh  linearise it about the current depth
     """
-    patches = [WaterPatch(water_on(part.mesh, physics, forcing), part.mf, part.ms, rotation, refresh) for part in share.parts]
+    patches = [
+        WaterPatch(water_on(part.mesh, physics, forcing, opening), part.mf, part.ms, rotation, refresh) for part in share.parts
+    ]
     return Basin(comm, share.parts, patches, share.count, physics.gravity)
 
 
@@ -47,7 +60,8 @@ def cut_and_build(
     forcing: ForcingOn = no_forcing,
     rotation: bool = True,
     refresh: bool = False,
+    opening: OpeningOn = closed,
 ) -> tuple[Share, Basin]:
     """Hand out rank 0's mesh and build the dynamics of every subdomain. Collective."""
     share = distribute(comm, mesh, count, overlap)
-    return share, basin_of(comm, share, physics, forcing, rotation, refresh)
+    return share, basin_of(comm, share, physics, forcing, rotation, refresh, opening)

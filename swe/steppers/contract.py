@@ -75,6 +75,9 @@ class Patch(Protocol):
     def divergence(self, transport: np.ndarray) -> np.ndarray:
         """Return the divergence (nf,), m s-1, of a transport on all edges held (ne,), m2 s-1."""
 
+    def settled(self, eta: np.ndarray, time: float) -> np.ndarray:
+        """Return the level (nf,), m, with what is given from outside at `time` (s) put in its place."""
+
     def rates(self, state: State, time: float) -> np.ndarray:
         """Return dU/dt on the solve part, (mf + ms,)."""
 

@@ -22,6 +22,7 @@ from dataclasses import dataclass
 import numpy as np
 
 from swe.exponential.action import phi_action
+from swe.exponential.contract import fitting
 from swe.steppers.contract import Patch, StageResult, State, beyond
 
 
@@ -44,7 +45,7 @@ class OneStage:
         rates = patch.rates(start, middle)
         own = step * float(np.linalg.norm(operator.weights * rates))
         allowed = self.tolerance * max(scale, own)
-        action = phi_action(operator, rates, step, (1, 2), allowed, self.method, self.largest)
+        action = phi_action(operator, rates, step, (1, 2), allowed, fitting(operator, self.method), self.largest)
         u = start.u[: patch.ms] + step * action.values[0][patch.mf :]
         transport = patch.transport(start) + step * operator.transport(action.values[1])
         work.update(operator=operator, rates=rates, allowed=allowed, u=u, transport=transport)
@@ -55,7 +56,7 @@ class OneStage:
     ) -> StageResult:
         operator = work["operator"]
         rim = patch.rates(beyond(patch, start, latest), time + 0.5 * step) - work["rates"]
-        action = phi_action(operator, rim, step, (2, 3), work["allowed"], self.method, self.largest)
+        action = phi_action(operator, rim, step, (2, 3), work["allowed"], fitting(operator, self.method), self.largest)
         u = work["u"] + step * action.values[0][patch.mf :]
         transport = work["transport"] + step * operator.transport(action.values[1])
         return StageResult(u, transport, action.products, action.error, 0.0, action.reason)

@@ -20,6 +20,7 @@ from dataclasses import dataclass
 import numpy as np
 
 from swe.exponential.action import phi_action
+from swe.exponential.contract import fitting
 from swe.steppers.contract import Patch, StageResult, State, beyond
 
 
@@ -62,7 +63,7 @@ class TwoStage:
         rates = patch.rates(start, time)
         own = step * float(np.linalg.norm(operator.weights * rates))
         allowed = self.tolerance * max(scale, own)
-        action = phi_action(operator, rates, step, (1, 2), allowed, self.method, self.largest)
+        action = phi_action(operator, rates, step, (1, 2), allowed, fitting(operator, self.method), self.largest)
         u = start.u[: patch.ms] + step * action.values[0][patch.mf :]
         transport = patch.transport(start) + step * operator.transport(action.values[1])
         work.update(operator=operator, rates=rates, allowed=allowed, u=u, transport=transport)
@@ -72,7 +73,7 @@ class TwoStage:
         operator = work["operator"]
         change = patch.solve_part(prediction) - patch.solve_part(start)
         remainder = work["rates_of_prediction"] - work["rates"] - operator.apply(change)
-        action = phi_action(operator, remainder, step, (2, 3), work["allowed"], self.method, self.largest)
+        action = phi_action(operator, remainder, step, (2, 3), work["allowed"], fitting(operator, self.method), self.largest)
         bend = patch.transport(prediction) - patch.transport(start) - operator.transport(change)
         u = work["u"] + step * action.values[0][patch.mf :]
         transport = work["transport"] + 0.5 * bend + step * operator.transport(action.values[1])
