@@ -10,8 +10,9 @@ from __future__ import annotations
 import numpy as np
 from scipy.linalg.blas import dgemv
 
-BLOCK = 16
-"""Vectors per block: most smooth problems fit into one."""
+BLOCK = 32
+"""Vectors per block. Most actions fit into one: two that are freed together went back to the system each time (glibc)
+and cost 2 ms of page faults an action at n = 30,000, more than all arithmetic on them."""
 
 
 class Basis:
