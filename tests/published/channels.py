@@ -1,4 +1,4 @@
-"""Meshes of the published checks: channels periodic along x, a disc with a fitted coast; and the frequency of a record."""
+"""Meshes of the checks: channels periodic along x, a plane of irregular faces, a fitted disc; and the frequency of a record."""
 
 from functools import cache
 
@@ -31,6 +31,15 @@ def _channel(nx: int, ny: int, spacing: float, depth: float, shift: np.ndarray) 
     points = np.column_stack([((i + shift[j]) * spacing).ravel(), ((j + 0.5) * ROW * spacing).ravel()])
     mesh = plane_mesh(points, (j < ny).ravel(), (nx * spacing, (ny + 4) * ROW * spacing))
     return with_depth(mesh, np.full(mesh.n_faces, depth))
+
+
+def irregular_plane(lx: float, ly: float, count: int, sweeps: int, depth: float) -> Mesh:
+    """A doubly periodic plane of `count` irregular faces, evened out by some sweeps."""
+    points = np.random.default_rng(5).random((count, 2)) * (lx, ly)
+    for _ in range(sweeps):
+        points = lloyd_plane(points, np.zeros(count, dtype=bool), period=(lx, ly))
+    mesh = plane_mesh(points, np.ones(count, dtype=bool), (lx, ly))
+    return with_depth(mesh, np.full(count, depth))
 
 
 @cache

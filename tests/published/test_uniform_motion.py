@@ -11,13 +11,12 @@ substitution. On regular hexagons the tangential velocity of uniform flow is exa
 import numpy as np
 import pytest
 from basins import along_normals
+from channels import irregular_plane
 from steps import EXPLICIT, EXPONENTIAL, STEPPERS, TWO_STAGE, rig
 
 from swe.dynamics.forcing.wind import ConstantWind
 from swe.mesh.lattice import periodic_hexagons
-from swe.mesh.lloyd import lloyd_plane
 from swe.mesh.topology import with_depth
-from swe.mesh.voronoi import plane_mesh
 from swe.operators import reconstruction
 
 DENSITY = 1025.0
@@ -64,11 +63,7 @@ def test_inertial_oscillation_with_rotation_in_the_remainder_has_the_order_of_th
 
 def test_inertial_oscillation_on_irregular_faces_is_right_to_a_few_hundredths():
     """The tangential velocity is only consistent on average there (Ringler et al. 2010): 2 % of the speed after a period."""
-    points = np.random.default_rng(5).random((300, 2)) * (6000e3, 4000e3)
-    for _ in range(60):
-        points = lloyd_plane(points, np.zeros(len(points), dtype=bool), period=(6000e3, 4000e3))
-    mesh = plane_mesh(points, np.ones(len(points), dtype=bool), (6000e3, 4000e3))
-    mesh = with_depth(mesh, np.full(mesh.n_faces, 30.0))
+    mesh = irregular_plane(6000e3, 4000e3, 300, 60, 30.0)
     f, span = 1e-4, 2 * np.pi / 1e-4
     error = motion(mesh, 0.1 + 0j, TWO_STAGE, span / 48, 48, f=f) - 0.1
     mean = abs(np.average(error, weights=mesh.face_area)) / 0.1
