@@ -10,6 +10,7 @@ import numpy as np
 from swe.dynamics.equations import Water
 from swe.dynamics.jacobian import JacobianFactory
 from swe.dynamics.wave import wave_operator
+from swe.operators.divergence import divergence_alike
 
 
 class WaterPatch:
@@ -25,6 +26,9 @@ class WaterPatch:
         self.water, self.mf, self.ms, self.refresh = water, mf, ms, refresh
         self._wave = wave_operator(water, mf, ms, rotation)
         self._jacobian: JacobianFactory | None = None
+        # Levels that several subdomains hold are updated by each of them: alike, so that a resumed run, which begins
+        # with the owners' levels everywhere, repeats the run that went on, bit for bit.
+        self._divergence = divergence_alike(water.mesh)
         self.energy_weights = self._wave.weights.copy()
 
     @property
@@ -33,7 +37,7 @@ class WaterPatch:
         return self._wave.radius
 
     def divergence(self, transport: np.ndarray) -> np.ndarray:
-        return self.water.operators.div @ transport
+        return self._divergence @ transport
 
     def settled(self, eta: np.ndarray, time: float) -> np.ndarray:
         return self.water.opening.settled(eta, time) if self.water.opening else eta

@@ -10,6 +10,7 @@ Source: Ringler et al. 2010, J. Comput. Phys. 229, 3065; the theorem of Gauss on
 
 from __future__ import annotations
 
+import numpy as np
 from scipy import sparse
 
 from swe.operators.sparse import compressed, sides
@@ -22,3 +23,15 @@ def divergence(mesh) -> sparse.csr_array:
     edge, face, sign = edge[inside], face[inside], sign[inside]
     values = sign * mesh.edge_length[edge] / mesh.face_area[face]
     return compressed(face, edge, values, (mesh.n_faces, mesh.n_edges))
+
+
+def divergence_alike(mesh) -> sparse.csr_array:
+    """Return div, (nf, ne), m-1, each row in the order of the edges of the WHOLE mesh. Not collective.
+
+    A row is summed in the order in which it is stored. So every subdomain that holds a face, with all its edges, finds the
+    same divergence bit for bit, however its own edges are numbered.
+    """
+    div = divergence(mesh)
+    rows = np.repeat(np.arange(mesh.n_faces), np.diff(div.indptr))
+    order = np.lexsort((mesh.edge_id[div.indices], rows))
+    return sparse.csr_array((div.data[order], div.indices[order], div.indptr), shape=div.shape)
