@@ -14,6 +14,12 @@ EARTH_ROTATION = 7.292e-5
 SEA_WATER_DENSITY = 1025.0
 """kg m-3; common practice, no source."""
 
+AIR_DENSITY = 1.225
+"""kg m-3, of dry air at 15 C and 1013.25 hPa. Source: ISO 2533:1975, Standard Atmosphere."""
+
+STANDARD_PRESSURE = 101325.0
+"""Standard atmosphere, Pa. Source: 10th CGPM (1954), resolution 4."""
+
 DEGREE = math.pi / 180.0
 """One degree in radians."""
 
