@@ -30,6 +30,7 @@ VERBS = {
     "mesh": "build the mesh of a case and write it as CF/UGRID netCDF",
     "run": "run a case, alone or under mpiexec",
     "report": "draw figures and print tables of a finished or running result",
+    "tides": "print the table of tidal constituents at a date",
     "cite": "list the references of the methods that a case uses",
     "new": "write a commented case file to start from",
 }
@@ -92,6 +93,8 @@ def parser() -> argparse.ArgumentParser:
     again.add_argument("--overwrite", action="store_true", help="replace an earlier result in the folder")
     run.add_argument("--quiet", action="store_true", help="no progress, only the last lines")
     made["report"].add_argument("results", metavar="FOLDER", help="result folder")
+    made["tides"].add_argument("names", nargs="*", metavar="NAME", help="constituent, such as M2 (default: all)")
+    made["tides"].add_argument("--date", metavar="DATE", help="date or date and time, UTC, such as 2031-03-01 (default: today)")
     made["new"].add_argument("case", metavar="CASE", help="case file to write")
     return top
 

@@ -9,7 +9,7 @@ from pathlib import Path
 import pytest
 
 ROOT = Path(__file__).resolve().parents[2]
-ALL = {"case", "mesh", "operators", "exponential", "dynamics", "steppers", "parallel", "output", "analysis"}
+ALL = {"case", "mesh", "operators", "exponential", "tide", "dynamics", "steppers", "parallel", "output", "analysis"}
 
 # Room: what it may import besides itself, errors, constants and the version; "room.module" opens one module of a room.
 ROOMS = {
@@ -18,8 +18,9 @@ ROOMS = {
     "case": set(),
     "mesh": set(),
     "exponential": set(),
+    "tide": set(),
     "operators": {"mesh"},
-    "dynamics": {"operators", "mesh"},
+    "dynamics": {"operators", "mesh", "tide"},
     "steppers": {"exponential"},
     "parallel": {"mesh", "exponential", "steppers.contract"},
     "output": {"parallel", "mesh"},
