@@ -25,13 +25,19 @@ KEY = "inputs_key"
 """Attribute of a kept mesh: what it was made from."""
 
 
-def mesh_for(case, folder: Path, say: Callable[[str], None]) -> Mesh:
+def mesh_for(
+    case, folder: Path, say: Callable[[str], None], require: Callable[[Mesh], None] = lambda mesh: None
+) -> Mesh:
     """Return the whole mesh of a case, generating and keeping it in `folder` when needed. Not collective.
 
+    require   raises when the mesh is not the one wanted; asked before a new mesh takes the place of a kept one
     Raises InputError or MeshError when an input is wrong or the mesh must not be used.
     """
     mesh = kept_mesh(case, folder, say)
-    return make_mesh(case, folder / FILE, say) if mesh is None else mesh
+    if mesh is None:
+        return make_mesh(case, folder / FILE, say, require)
+    require(mesh)
+    return mesh
 
 
 def kept_mesh(case, folder: Path, say: Callable[[str], None] = lambda text: None) -> Mesh | None:
@@ -49,10 +55,13 @@ def kept_mesh(case, folder: Path, say: Callable[[str], None] = lambda text: None
     return None
 
 
-def make_mesh(case, path: Path, say: Callable[[str], None]) -> Mesh:
+def make_mesh(
+    case, path: Path, say: Callable[[str], None], require: Callable[[Mesh], None] = lambda mesh: None
+) -> Mesh:
     """Generate the mesh of a case, check it, write it to `path`, and say how it came out. Not collective."""
     mesh, lines = generated(case)
     check_invariants(mesh)
+    require(mesh)
     write_mesh(path, mesh, case.title, {KEY: inputs_key(case)})
     for line in (*lines, *quality(mesh, case.earth.gravity).lines(), f"mesh written to {path}"):
         say(line)
@@ -73,7 +82,7 @@ def _key_of(path: Path) -> str | None:
     try:
         with netCDF4.Dataset(path) as data:
             return getattr(data, KEY, None)
-    except OSError:
+    except (OSError, RuntimeError):  # netCDF4 says either of a damaged file
         return None
 
 

@@ -45,7 +45,7 @@ def fields_of(case) -> tuple[str, ...]:
 
 
 class Recorder:
-    """Watches every step and writes what is due. All methods are collective.
+    """Watches every step and writes what is due. A context manager; all methods but `close` are collective.
 
     folder    the claimed result folder (rank 0), else None; mesh   the whole mesh (rank 0), else None
     sampling  where the stations are (rank 0), else None
@@ -109,9 +109,9 @@ class Recorder:
     def _volumes(self) -> tuple[float, float]:
         basin = self.setup.basin
         rows = [
-            [diagnostics.volume(patch.water, state.eta, slice(part.n_owned)), diagnostics.volume_anomaly(patch.water, state.eta, slice(part.n_owned))]
+            [sum_of(patch.water, state.eta, slice(part.n_owned)) for sum_of in (diagnostics.volume, diagnostics.volume_anomaly)]
             for part, patch, state in zip(basin.parts, basin.patches, basin.states, strict=True)
-        ]  # fmt: skip
+        ]
         volume, anomaly = total(self.comm, np.array(rows))
         return float(volume), float(anomaly)
 
@@ -209,7 +209,9 @@ class Recorder:
         for name, row in zip(Extremes.NAMES, self._whole_extremes() or [None] * 6, strict=True):
             arrays[name] = row
         meta = meta | {"time": time, "volume_start": self.volume_start, "anomaly_start": self.anomaly_start}
-        path = on_root(self.comm, "writing the checkpoint", lambda: checkpoint.save(self.folder.checkpoints, number, arrays, meta))
+        path = on_root(
+            self.comm, "writing the checkpoint", lambda: checkpoint.save(self.folder.checkpoints, number, arrays, meta)
+        )
         return str(path or "")
 
     def restore(self, arrays: dict | None, meta: dict) -> None:
@@ -220,6 +222,17 @@ class Recorder:
             for values, part in zip(self.extremes.values, parts, strict=True):
                 values[row] = part[: values.shape[1]]
 
+    def mass_drift(self) -> float:
+        """Return the change of mass since the start over the mass at the start, now."""
+        return (self._volumes()[1] - self.anomaly_start) / self.volume_start
+
     def close(self) -> None:
-        """Close the files. Not collective."""
+        """Close the files. Not collective. Raises FileError."""
         self._files.close()
+
+    def __enter__(self) -> Recorder:
+        return self
+
+    def __exit__(self, kind, failure, trace) -> None:
+        # With a failure on its way, trouble in closing is not reported over it.
+        self._files.__exit__(kind, failure, trace)

@@ -1,6 +1,6 @@
 """The run: from a case to a finished result, step by step; stop, failure and resume.
 
-    build mesh -> hand out -> start or resume -> steps -> summary
+    claim the folder -> mesh -> hand out -> start or resume -> steps -> close the files -> summary
 
 After every step the ranks know alike whether someone asked to stop (it rides in the step's own reduction). A stop and a
 numerical failure both leave a checkpoint of the last good state behind.
@@ -8,25 +8,28 @@ numerical failure both leave a checkpoint of the last good state behind.
 
 from __future__ import annotations
 
+import contextlib
 import time as clock
 from collections.abc import Callable
 from dataclasses import dataclass, field
 from pathlib import Path
 
+import numpy as np
 from mpi4py import MPI
 
-from swe.errors import InputError, NumericalFailure, Stopped
+from swe.case.case import place_of
+from swe.errors import NumericalFailure, Stopped
 from swe.mesh.topology import Mesh
-from swe.output import checkpoint
+from swe.output.checkpoint import Checkpoint
 from swe.output.folder import ResultFolder
 from swe.output.stations import Sampling, Station, sample
 from swe.output.summary import versions, write_summary
 from swe.parallel.ranks import StopRequest, on_root, peak_memory
-from swe.case.case import place_of
 from swe.simulation.meshing import mesh_for
 from swe.simulation.progress import Progress, Reading
 from swe.simulation.progress import clock as model_clock
 from swe.simulation.recorder import Recorder, fields_of
+from swe.simulation.resume import newest, physics_key, recorded, require
 from swe.simulation.setup import Setup, prepare
 from swe.simulation.start import begin, put
 
@@ -59,7 +62,6 @@ class Run:
     case: object
     setup: Setup
     recorder: Recorder
-    physics_key: str
     quiet: bool
     say: Callable[[str], None]
     number: int = 0
@@ -78,16 +80,10 @@ class Run:
         self.scale = self.setup.basin.scale(0.0, self.setup.plan.step)
         self.recorder.begin()
 
-    def resume(self, saved: checkpoint.Checkpoint | None) -> None:
-        """Take up where a checkpoint (rank 0) left the run."""
+    def resume(self, saved: Checkpoint | None) -> None:
+        """Take up where a checkpoint (rank 0), which `resume.require` has accepted, left the run."""
         meta = self.comm.bcast(saved.meta if saved else None, root=0)
-        step = self.setup.plan.step
-        self.number = round(meta["time"] / step)
-        if abs(self.time - meta["time"]) > 1e-6 * step or self.number > self.setup.plan.steps:
-            raise InputError(
-                f"the checkpoint holds {meta['time']:g} s, not a whole number of steps of {step:g} s within the run: "
-                "choose a step that divides it and a duration that is not shorter"
-            ).on_all_ranks()
+        self.number = round(meta["time"] / self.setup.plan.step)
         self.scale = meta["scale"]
         self.spent = Counts(**meta["spent"])
         arrays = saved.arrays if saved else None
@@ -100,7 +96,8 @@ class Run:
         """Step to the end. Raises Stopped or NumericalFailure with the state saved."""
         basin, plan = self.setup.basin, self.setup.plan
         progress = Progress(self.time, plan.steps * plan.step) if self.comm.rank == 0 and not self.quiet else None
-        with StopRequest() as request:
+        # A run that blows up overflows first. Every value is looked at in the step's own reduction, which says where it happened.
+        with StopRequest() as request, np.errstate(all="ignore"):
             while self.number < plan.steps:
                 try:
                     report = basin.advance(
@@ -115,7 +112,8 @@ class Run:
                 self.spent.mismatch_sum += report.mismatch
                 self.spent.largest_error = max(self.spent.largest_error, report.error)
                 with basin.phases("output"):
-                    self.recorder.see(self.number, self.time, report, {"products": self.spent.products, "repeats": self.spent.repeats})
+                    counts = {"products": self.spent.products, "repeats": self.spent.repeats}
+                    self.recorder.see(self.number, self.time, report, counts)
                     if self.recorder.checkpoint_due(self.number) and self.number < plan.steps:
                         self.save()
                 if progress and (progress.due() or self.number == plan.steps):
@@ -138,14 +136,15 @@ class Run:
         where = self.comm.bcast(self.save(), root=0)
         return NumericalFailure(
             f"step {self.number + 1} at {model_clock(self.time)} ({self.time:g} s): {failure}; "
-            f"the last good state, step {self.number}, is saved in {where}"
+            f"the last good state, step {self.number}, is saved in {where}; continue from there with --resume"
         ).on_all_ranks()
 
     def save(self) -> str:
         """Write a checkpoint of the present state; return its path on rank 0."""
         meta = {
             "mesh_checksum": self.setup.share.checksum,
-            "physics_key": self.physics_key,
+            "physics_key": physics_key(self.case),
+            "recorded": recorded(self.case),
             "scale": self.scale,
             "spent": self.totals().as_dict(),
         }
@@ -187,7 +186,7 @@ class Run:
             "model_seconds": self.time,
             "wall_seconds": spent.wall_seconds,
             "simulated_over_real": self.time / max(spent.wall_seconds, 1e-9),
-            "mass_drift_relative": self.recorder.row.get("mass_drift", 0.0),
+            "mass_drift_relative": self.recorder.mass_drift(),
             "largest_mismatch": spent.largest_mismatch,
             "localisation_error_metres": spent.mismatch_sum,
             "largest_action_error": spent.largest_error,
@@ -225,26 +224,23 @@ def run_case(comm: MPI.Comm, case, folder: Path, resume: bool, overwrite: bool, 
 
     on_root(comm, "checking the case", fields_of, case)
     result = on_root(comm, "claiming the result folder", _claim, folder, resume, overwrite)
-    recorder = None
-    try:
+    with contextlib.ExitStack() as held:
+        if result:
+            held.enter_context(result)
         for note in result.notes if result else ():
             say(note)
-        mesh = on_root(comm, "making the mesh", lambda: mesh_for(case, result.path, say))
-        saved = on_root(comm, "reading the checkpoint", _newest, case, result, mesh, say) if resume else None
+        saved = on_root(comm, "reading the checkpoint", lambda: newest(result.checkpoints, say)) if resume else None
+        fits = (lambda mesh: require(saved, case, mesh)) if saved else (lambda mesh: None)
+        mesh = on_root(comm, "making the mesh", lambda: mesh_for(case, result.path, say, fits))
         sampling = on_root(comm, "placing the stations", stations_on, case, mesh)
         setup = prepare(comm, case, mesh)
         say(_what_runs(setup, case, comm.size))
-        recorder = Recorder(setup, case, result, mesh, sampling)
-        run = Run(comm, case, setup, recorder, physics_key(case), quiet, say, began=began)
+        recorder = held.enter_context(Recorder(setup, case, result, mesh, sampling))
+        run = Run(comm, case, setup, recorder, quiet, say, began=began)
         setup.basin.phases.seconds["set-up"] = clock.monotonic() - began
         run.resume(saved) if resume else run.start(mesh)
         del mesh
         return _to_the_end(run, result)
-    finally:
-        if recorder is not None:
-            recorder.close()
-        if result is not None:
-            result.release()
 
 
 def _to_the_end(run: Run, result: ResultFolder | None) -> dict:
@@ -253,10 +249,15 @@ def _to_the_end(run: Run, result: ResultFolder | None) -> dict:
         run.recorder.flush(run.time)
         run.save()
     except (Stopped, NumericalFailure):
-        summary = run.summary(finished=False)
-        on_root(run.comm, "writing the summary", lambda: write_summary(result.summary, summary))
+        _conclude(run, result, finished=False)
         raise
-    summary = run.summary(finished=True)
+    return _conclude(run, result, finished=True)
+
+
+def _conclude(run: Run, result: ResultFolder | None, finished: bool) -> dict:
+    """Close the files, so that the summary says "finished" of complete ones only, and write it."""
+    summary = run.summary(finished)
+    on_root(run.comm, "closing the result files", run.recorder.close)
     on_root(run.comm, "writing the summary", lambda: write_summary(result.summary, summary))
     return summary
 
@@ -264,19 +265,6 @@ def _to_the_end(run: Run, result: ResultFolder | None) -> dict:
 def _claim(folder: Path, resume: bool, overwrite: bool) -> ResultFolder:
     result = ResultFolder(folder)
     return result.resume() if resume else result.overwrite() if overwrite else result.begin()
-
-
-def _newest(case, result: ResultFolder, mesh: Mesh, say) -> checkpoint.Checkpoint:
-    saved, skipped = checkpoint.newest(result.checkpoints)
-    for line in skipped:
-        say(line)
-    checkpoint.require(saved, mesh.checksum(), physics_key(case))
-    return saved
-
-
-def physics_key(case) -> str:
-    """Return what a checkpoint must share with the case that resumes it: physics and forcing, not method or cadence."""
-    return repr((case.earth, case.drag, case.wind, case.time.begin.isoformat()))
 
 
 def stations_on(case, mesh: Mesh) -> Sampling:
