@@ -96,11 +96,15 @@ class JacobianFactory:
         self._refill = self._assemble()
         self._refill.segment["one"][:] = 1.0
         self._waves = self._gravity_places()
+        # what is given on outer faces enters through the remainder, as from a neighbouring subdomain
+        self._given = np.flatnonzero(np.append(mesh.face_outer[:mf], np.zeros(ms, dtype=bool))[self._refill.places.columns])
         self._shape_weights = (mesh.edge_length * gradient_distance(mesh))[:ms]
 
     def at(self, eta: np.ndarray, u: np.ndarray, time: float) -> CurrentOperator:
         """Return the Jacobian at (eta (nf,), u (ne,)) and model time `time` (s); later calls leave it alone. Not collective."""
         water, op, ms, z = self.water, self.water.operators, self.ms, self._refill.segment
+        if water.opening:
+            eta = water.opening.settled(eta, time)
         h_node, h_edge = water.thickness(eta)
         q_node = (water.coriolis_node + op.curl @ u) / h_node
         flow = h_edge * u
@@ -119,7 +123,9 @@ class JacobianFactory:
             self._friction(u, h_edge[:ms], time)
         area = water.physics.gravity * water.mesh.face_area[: self.mf]
         weights = np.sqrt(np.concatenate((area, self._shape_weights * h_edge[:ms])))
-        return CurrentOperator(self, self._refill.matrix(), weights, h_edge[:ms].copy(), u[:ms].copy())
+        matrix = self._refill.matrix()
+        matrix.data[self._given] = 0.0
+        return CurrentOperator(self, matrix, weights, h_edge[:ms].copy(), u[:ms].copy())
 
     def radius(self, operator: CurrentOperator) -> float:
         """Return the bound of the spectral radius of `operator`, s-1. Not collective."""

@@ -1,7 +1,9 @@
 """Gradients: of a face field along n, of a node field along t.
 
-    (grad p)_e  = (p_second - p_first) / d_e          faces on both sides of the edge (d/2 across an open boundary); zero row on border edges and between outer faces
+    (grad p)_e  = (p_second - p_first) / d_e          faces on both sides of the edge; zero row on border edges
     (along p)_e = (p_v2 - p_v1) / l_e                 nodes at both ends of the edge; zero row on border edges
+
+Open boundary: d/2 in the place of d, for the level is given on the boundary line; zero rows between two outer faces.
 
 `A div` and `l d grad` are negative adjoints; curl grad = 0 and div along = 0 hold exactly (telescoping sums).
 Source: Ringler et al. 2010, J. Comput. Phys. 229, 3065.

@@ -5,7 +5,8 @@
 (t points from the first node to the second, so the second lies to the left of n and n runs counter-clockwise round it.)
 
 Coast, free slip: the water exerts no tangential stress on land, so the vorticity of a coast node is zero: its row is
-empty. So is that of a node between two outer faces of an open boundary, whose currents nobody knows. Columns of border edges are dropped (u = 0 on a coast; unknown where a restricted mesh is cut).
+empty. So is that of a node between two outer faces of an open boundary, whose currents nobody knows. Columns of border
+edges are dropped (u = 0 on a coast; unknown where a restricted mesh is cut).
 Source: Ringler et al. 2010, J. Comput. Phys. 229, 3065.
 """
 
