@@ -29,12 +29,13 @@ from swe.mesh.generation_report import (
     without_centre,
 )
 from swe.mesh.layout import BAND, Basin, Layout, coarse_levels, expected_faces, lay_out
+from swe.mesh.opening_line import OpenLine, outer_centres
 from swe.mesh.order import curve_order
 from swe.mesh.quality import check_invariants
 from swe.mesh.shoreline import true_shoreline
 from swe.mesh.spacing import Raster, Site, Spacing, SpacingField, raster_over, spacing_field
 from swe.mesh.surface import Chart, Surface
-from swe.mesh.topology import Mesh, with_depth
+from swe.mesh.topology import Mesh, outer_depth, with_depth, with_outer
 from swe.mesh.voronoi import plane_mesh, sphere_mesh
 
 ROUGH_PIXELS = 40_000
@@ -54,6 +55,7 @@ def generate(
     least_depth: float,
     sweeps: int,
     seed: int,
+    openings: tuple[OpenLine, ...] = (),
 ) -> tuple[Mesh, GenerationReport]:
     """Generate the mesh of a basin. Not collective.
 
@@ -62,6 +64,7 @@ def generate(
     bed          depth of the water (depth.py); least_depth: m, nowhere shallower
     sweeps       evening sweeps on the final level, 1 or more; 30 to 60 give an even mesh
     seed         of the first positions, an integer from 0
+    openings     lines along the outline where the basin is open; the cells just beyond become outer faces
     Returns the mesh and how it came about. Raises InputError or MeshError, one line.
     """
     if sweeps < 1 or seed < 0:
@@ -74,10 +77,12 @@ def generate(
     culled = cull(triangles, layout.wet)
     if not culled.kept.any():
         raise MeshError("the basin is nowhere two faces wide; choose a finer spacing")
-    points, faces = _ordered(layout.centres, culled.kept, triangles)
+    outer = outer_centres(layout.centres, culled.kept, triangles, openings, surface, chart)
+    points, faces, outer = _ordered(layout.centres, culled.kept, outer, triangles)
     mesh = _built(points, faces, surface, chart)
     depth, depth_report = depth_at(bed, chart.from_chart(points[faces]), least_depth)
-    mesh = with_depth(mesh, depth)
+    mesh = with_outer(with_depth(mesh, depth), outer)
+    mesh = with_depth(mesh, outer_depth(mesh))
     check_invariants(mesh)
     said = _losses(basin, layout, culled, field, chart, surface) | _outcome(mesh, points[faces], basin, field, chart, surface)
     report = GenerationReport(
@@ -123,13 +128,20 @@ def _inside(area: shapely.Geometry, places: np.ndarray) -> np.ndarray:
     return shapely.contains_xy(area, places)
 
 
-def _ordered(centres: np.ndarray, kept: np.ndarray, triangles: np.ndarray) -> tuple[np.ndarray, np.ndarray]:
-    """Return the points of the mesh and which of them are faces: these first, along the curve; then the dry ones beside them."""
+def _ordered(
+    centres: np.ndarray, kept: np.ndarray, outer: np.ndarray, triangles: np.ndarray
+) -> tuple[np.ndarray, np.ndarray, np.ndarray]:
+    """Return the points of the mesh, which of them are faces, and which faces are outer ones.
+
+    Faces come first, along the curve, outer ones among them; then the dry points whose cells touch theirs.
+    """
+    cells = kept | outer
     touching = np.zeros(len(centres), dtype=bool)
-    touching[triangles[kept[triangles].any(axis=1)]] = True
-    faces = np.flatnonzero(kept)
-    points = np.vstack([centres[faces[curve_order(centres[faces])]], centres[touching & ~kept]])
-    return points, np.arange(len(points)) < len(faces)
+    touching[triangles[cells[triangles].any(axis=1)]] = True
+    faces = np.flatnonzero(cells)
+    faces = faces[curve_order(centres[faces])]
+    points = np.vstack([centres[faces], centres[touching & ~cells]])
+    return points, np.arange(len(points)) < len(faces), outer[faces]
 
 
 def _built(points: np.ndarray, faces: np.ndarray, surface: Surface, chart: Chart) -> Mesh:
@@ -153,14 +165,16 @@ def _losses(basin: Basin, layout: Layout, culled: Culled, field: SpacingField, c
 
 def _outcome(mesh: Mesh, centres: np.ndarray, basin: Basin, field: SpacingField, chart: Chart, surface: Surface) -> dict:
     """Return the fields of the report on the mesh itself; centres (nf, 2) of its faces in the chart."""
-    first, second = centres[mesh.edge_faces[: mesh.n_inner]].transpose(1, 0, 2)
+    inside = ~mesh.face_outer
+    pairs = mesh.edge_faces[: mesh.n_inner]
+    first, second = centres[pairs[inside[pairs].all(axis=1)]].transpose(1, 0, 2)
     crossing = across_land(first, second, basin)
     wanted = field.at(centres) / chart.stretch(centres)
     return {
         "faces": mesh.n_faces,
         "edges": mesh.n_edges,
         "nodes": mesh.n_nodes,
-        "area": float(mesh.face_area.sum()),
+        "area": float(mesh.face_area[inside].sum()),
         "water_area": true_area(basin.water, chart),
         "wanted_finest": float(wanted.min()),
         "wanted_coarsest": float(wanted.max()),

@@ -142,6 +142,16 @@ def with_outer(mesh: Mesh, outer: np.ndarray) -> Mesh:
     return replace(mesh, face_outer=np.asarray(outer, dtype=bool).copy())
 
 
+def outer_depth(mesh: Mesh) -> np.ndarray:
+    """Return the depth (nf,), m, with that of each outer face taken from the water beside it (mean). Not collective."""
+    _, inner, outer, _ = open_edges(mesh)
+    depth = mesh.depth.copy()
+    count = np.bincount(outer, minlength=mesh.n_faces)
+    beside = count > 0
+    depth[beside] = np.bincount(outer, mesh.depth[inner], mesh.n_faces)[beside] / count[beside]
+    return depth
+
+
 def open_edges(mesh: Mesh) -> tuple[np.ndarray, np.ndarray, np.ndarray, np.ndarray]:
     """Return (edge, inner face, outer face, sign) of every edge across an open boundary. Not collective.
 
