@@ -12,7 +12,7 @@ import os
 import sys
 
 from swe import __version__
-from swe.errors import SweError
+from swe.errors import Stopped, SweError
 
 EPILOG = """exit codes:
   0  done
@@ -48,15 +48,18 @@ def main(arguments: list[str] | None = None) -> int:
 
     verb = importlib.import_module(f"swe.cli.{options.verb}")
     try:
-        return verb.run(options) or 0
+        code = verb.run(options) or 0
+        sys.stdout.flush()
+        return code
     except SweError as error:
         return _tell(error)
-    except BrokenPipeError:
-        sys.stderr.close()
+    except KeyboardInterrupt:  # outside the steps, where a signal is a request that all ranks agree about
+        return _tell(Stopped("stopped from the keyboard before the first step or after the last; nothing was saved now"))
+    except BrokenPipeError:  # whoever reads the output has seen enough
+        from swe.simulation.progress import hush
+
+        hush()
         return 0
-    except KeyboardInterrupt:
-        sys.stderr.write("stopped from the keyboard\n")
-        return 6
 
 
 def _tell(error: SweError) -> int:

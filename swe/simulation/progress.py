@@ -1,7 +1,11 @@
-"""What a person sees while a run goes on: a bar on a terminal, one line a minute elsewhere. Rank 0 only."""
+"""What a person sees while a run goes on: a bar on a terminal, one line a minute elsewhere. Rank 0 only.
+
+A reader may go away: a pipe is closed, a connection to a terminal is lost. A run does not end for that, it falls silent.
+"""
 
 from __future__ import annotations
 
+import contextlib
 import os
 import sys
 import time
@@ -13,6 +17,20 @@ BAR_SECONDS = 0.5
 
 LINE_SECONDS = 60.0
 """Wall time between two lines when the output is not a terminal."""
+
+
+def hush() -> None:
+    """Send what is still said to standard output nowhere: nobody reads it any more. Not collective."""
+    with contextlib.suppress(OSError, ValueError):  # a stand-in for standard output may have no descriptor
+        os.dup2(os.open(os.devnull, os.O_WRONLY), sys.stdout.fileno())
+
+
+def say(text: str) -> None:
+    """Write a line to standard output as long as somebody reads it. Not collective."""
+    try:
+        print(text, flush=True)
+    except OSError:
+        hush()
 
 
 @dataclass(frozen=True)
@@ -50,17 +68,22 @@ class Progress:
         if self.bar:
             done = (reading.model_seconds - self.begin) / max(self.end - self.begin, 1e-30)
             filled = round(20 * min(done, 1.0))
-            self.out.write(f"\r[{'#' * filled}{'.' * (20 - filled)}] {text}\x1b[K" + ("\n" if last else ""))
+            self._write(f"\r[{'#' * filled}{'.' * (20 - filled)}] {text}\x1b[K" + ("\n" if last else ""))
         else:
-            self.out.write(text + "\n")
-        self.out.flush()
+            self._write(text + "\n")
         self._drawn = not last
 
     def line(self, text: str) -> None:
         """Write a line of its own, without tearing the bar."""
-        self.out.write(("\n" if self.bar and self._drawn else "") + text + "\n")
-        self.out.flush()
+        self._write(("\n" if self.bar and self._drawn else "") + text + "\n")
         self._drawn = False
+
+    def _write(self, text: str) -> None:
+        try:
+            self.out.write(text)
+            self.out.flush()
+        except OSError:
+            hush()
 
     def _text(self, r: Reading, wall: float) -> str:
         done = r.model_seconds - self.begin

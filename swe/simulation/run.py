@@ -25,6 +25,7 @@ from swe.output.folder import ResultFolder
 from swe.output.stations import Sampling, Station, sample
 from swe.output.summary import versions, write_summary
 from swe.parallel.ranks import StopRequest, on_root, peak_memory
+from swe.simulation import progress as person
 from swe.simulation.meshing import mesh_for
 from swe.simulation.progress import Progress, Reading
 from swe.simulation.progress import clock as model_clock
@@ -220,7 +221,7 @@ def run_case(comm: MPI.Comm, case, folder: Path, resume: bool, overwrite: bool, 
 
     def say(text: str) -> None:
         if comm.rank == 0 and not quiet:
-            print(text, flush=True)
+            person.say(text)
 
     on_root(comm, "checking the case", fields_of, case)
     result = on_root(comm, "claiming the result folder", _claim, folder, resume, overwrite)
