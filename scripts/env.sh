@@ -16,8 +16,11 @@ fi
 # launch RANKS COMMAND...: run a command under mpiexec on this machine.
 # More ranks than cores are allowed (same as --oversubscribe) and then give way while they wait. Ranks are not bound to
 # cores: two jobs side by side would be bound to the same ones. Names: Open MPI 4 | Open MPI 5 (PRRTE).
+# SIGTERM, Ctrl-C: mpiexec itself would kill its ranks one second later and return 1. SIGUSR1 it hands on to them, so that
+# a run saves its state in its own time and says so in its exit code; that is what a first signal becomes here. A second
+# one reaches mpiexec as SIGTERM. In a session of its own mpiexec hears of Ctrl-C from here only.
 launch() {
-    local ranks=$1
+    local ranks=$1 job code asked=0 before own=""
     shift
     export OMPI_MCA_rmaps_base_oversubscribe="${OMPI_MCA_rmaps_base_oversubscribe:-1}"
     export OMPI_MCA_hwloc_base_binding_policy="${OMPI_MCA_hwloc_base_binding_policy:-none}"
@@ -26,5 +29,16 @@ launch() {
     if [ "$ranks" -gt "$(nproc)" ]; then
         export OMPI_MCA_mpi_yield_when_idle="${OMPI_MCA_mpi_yield_when_idle:-1}"
     fi
-    mpiexec -n "$ranks" "$@"
+    case $- in *m*) mpiexec -n "$ranks" "$@"; return ;; esac # a shell with job control has its own ways
+    [ -z "$(command -v setsid)" ] || own=setsid
+    $own mpiexec -n "$ranks" "$@" </dev/null &
+    job=$!
+    trap 'asked=$((asked + 1)); [ "$asked" -gt 1 ] && kill -TERM "$job" || kill -USR1 "$job"' INT TERM HUP USR1
+    while :; do
+        before=$asked code=0
+        wait "$job" || code=$?
+        [ "$asked" != "$before" ] || break # a signal ends `wait` early
+    done
+    trap - INT TERM HUP USR1
+    return "$code"
 }

@@ -11,13 +11,13 @@ fail() {
 span() { if [ "$1" -lt 60 ]; then echo "$1 s"; else echo "$(($1 / 60)) min $(($1 % 60)) s"; fi; }
 
 # patiently TITLE SECONDS LOG COMMAND...: run a command into a log file, with a line now and every 30 s.
-# SECONDS: how long it usually takes. Returns 3 after the last lines of the log when the command fails. The command is a
+# SECONDS: how long it takes on two free cores. Returns 3 after the last lines of the log when the command fails. The command is a
 # process group of its own, so that it ends with us when we are stopped.
 patiently() {
     local title=$1 usual=$2 log=$3 begin=$SECONDS spoken=0 pid
     shift 3
     mkdir -p "$(dirname "$log")"
-    say "$title: usually $(span "$usual"); log: $log"
+    say "$title: $(span "$usual") on two free cores; log: $log"
     set -m
     "$@" >"$log" 2>&1 </dev/null &
     pid=$!
@@ -28,7 +28,7 @@ patiently() {
         sleep 0.2
         if [ $((SECONDS - begin)) -ge $((spoken + 30)) ]; then
             spoken=$((SECONDS - begin))
-            say "$title: $(span "$spoken") so far, usually $(span "$usual")"
+            say "$title: $(span "$spoken") so far, $(span "$usual") on two free cores"
         fi
     done
     trap - INT TERM HUP
