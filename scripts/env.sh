@@ -33,7 +33,7 @@ launch() {
     [ -z "$(command -v setsid)" ] || own=setsid
     $own mpiexec -n "$ranks" "$@" </dev/null &
     job=$!
-    trap 'asked=$((asked + 1)); [ "$asked" -gt 1 ] && kill -TERM "$job" || kill -USR1 "$job"' INT TERM HUP USR1
+    trap 'asked=$((asked + 1)); if [ "$asked" = 1 ]; then kill -USR1 "$job"; else kill -TERM "$job"; fi' INT TERM HUP USR1
     while :; do
         before=$asked code=0
         wait "$job" || code=$?

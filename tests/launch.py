@@ -25,7 +25,8 @@ def command(ranks: int, *words: str | Path) -> list[str]:
 def on_ranks(ranks: int, *words: str | Path, timeout: float = 120, cwd: Path = ROOT, **more: str) -> subprocess.CompletedProcess:
     """Run `words` on `ranks` ranks; return exit code and all output (stdout and stderr as one text).
 
-    timeout   s; then the whole job is asked to end (SIGTERM), killed 10 s later, and its exit code is negative.
+    timeout   s; then the job is asked to end (SIGTERM), told so 10 s later (scripts/env.sh hands a second signal on to
+              mpiexec), and killed after 10 s more
     more      additional environment variables
     """
     job = subprocess.Popen(
@@ -39,7 +40,7 @@ def on_ranks(ranks: int, *words: str | Path, timeout: float = 120, cwd: Path = R
         errors="replace",
         start_new_session=True,
     )
-    for patience, end in ((timeout, signal.SIGTERM), (10, signal.SIGKILL)):
+    for patience, end in ((timeout, signal.SIGTERM), (10, signal.SIGTERM), (10, signal.SIGKILL)):
         try:
             output, _ = job.communicate(timeout=patience)
             break
