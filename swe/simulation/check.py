@@ -43,7 +43,7 @@ def check(case, ranks: int) -> list[str]:
     seen = outlook(case, inputs)
     plan = plan_for(case, math.sqrt(6.0) / seen.crossing_time, ranks)
     faces = round(seen.faces)
-    _refuse_too_many(plan, faces)
+    _refuse_count(plan, faces, ranks)
     return [
         f"water {seen.shallowest:.4g} to {seen.deepest:.4g} m deep, about {faces} faces (the mesh is not made yet: swe mesh)",
         *_costs(case, plan, faces, ranks),
@@ -55,14 +55,19 @@ def _settled(case, mesh: Mesh, ranks: int) -> list[str]:
     sampling = stations_on(case, mesh)
     if case.start.kind == "file":
         last_record(case, mesh)
-    _refuse_too_many(plan_of(case, mesh, ranks), mesh.n_faces)
+    _refuse_count(plan_of(case, mesh, ranks), mesh.n_faces, ranks)
     lines = [f"mesh of {mesh.n_faces} faces, {mesh.depth.min():.4g} to {mesh.depth.max():.4g} m deep"]
     for station, distance, face in zip(sampling.stations, sampling.distance, sampling.face, strict=True):
         lines.append(f"station {station.name}: face {face}, {distance:.0f} m from its centre, {mesh.depth[face]:.4g} m deep")
     return lines
 
 
-def _refuse_too_many(plan: Plan, faces: int) -> None:
+def _refuse_count(plan: Plan, faces: int, ranks: int) -> None:
+    """Refuse too many subdomains for the faces, and too few for the ranks, as the run itself would."""
+    if plan.count < ranks:
+        raise InputError(
+            f"{plan.count} subdomains for {ranks} ranks: every rank needs at least one; use fewer ranks or more subdomains"
+        )
     if plan.count > max(1, faces // LEAST_FACES):
         raise InputError(
             f"{plan.count} subdomains for about {faces} faces: allowed are 1 to {max(1, faces // LEAST_FACES)} (at least "
@@ -89,7 +94,7 @@ def _costs(case, plan: Plan, faces: int, ranks: int) -> list[str]:
 
 
 def _held(faces: int, plan: Plan) -> float:
-    """Faces of a subdomain with overlap and ring, taken as a hexagon of hexagons: k layers round 3 r^2 faces add 6 r k + 3 k^2."""
+    """Faces of a subdomain with overlap and ring, a hexagon of hexagons: k layers round 3 r^2 faces add 6 r k + 3 k^2."""
     if plan.count == 1:
         return faces
     own = faces / plan.count

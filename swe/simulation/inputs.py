@@ -39,7 +39,10 @@ class Inputs:
 
 @dataclass(frozen=True)
 class Outlook:
-    """What is known before there is a mesh: faces, shallowest and deepest water (m, least depth applied), shortest crossing time (s)."""
+    """What is known before there is a mesh.
+
+    faces; shallowest and deepest water, m, least depth applied; shortest crossing time of a face, s
+    """
 
     faces: float
     shallowest: float
@@ -144,15 +147,26 @@ def _refuse_stations_on_land(case, inputs: Inputs) -> None:
     """Raise CaseError for every station that lies further on land than the spacing could explain."""
     mistakes = []
     reach = case.mesh.coarsest or case.mesh.spacing
-    chart = chart_of(inputs.water, inputs.surface)
-    water = charted(inputs.water, inputs.surface, chart)
-    for number, station in enumerate(case.stations, 1):
-        place = chart.to_chart(np.array([place_of(station)]))
-        distance = float(shapely.distance(water, shapely.points(place)[0]) / chart.stretch(place)[0])
+    for number, station in enumerate(case.stations):
+        place = place_of(station)
+        distance = _from_water(inputs, place)
         if distance > reach:
+            remedy = f"correct its coordinates ({' before '.join(inputs.surface.axes)}) or leave it out"
+            if _from_water(inputs, place[::-1]) <= reach:
+                remedy = f"{' and '.join(inputs.surface.axes)} look swapped"
             mistakes.append(
-                f"{case.path}: station {number} {station.name!r}: {distance:.4g} m from the nearest water; allowed is {reach:g} m, one "
-                f"spacing: correct its coordinates ({' before '.join(inputs.surface.axes)}) or leave it out"
+                f"{case.where('station', number, 'name')} = {station.name!r}: {distance:,.0f} m from the nearest water; allowed "
+                f"is {reach:,.0f} m, one spacing: {remedy}"
             )
     if mistakes:
         raise CaseError(mistakes)
+
+
+def _from_water(inputs: Inputs, place: tuple[float, float]) -> float:
+    """Return the distance of a place from the water, m; infinite where it is no place at all."""
+    if inputs.surface.spherical and abs(place[1]) > 90.0:
+        return math.inf
+    chart = chart_of(inputs.water, inputs.surface)
+    at = chart.to_chart(np.array([place]))
+    water = charted(inputs.water, inputs.surface, chart)
+    return float(shapely.distance(water, shapely.points(at)[0]) / chart.stretch(at)[0])
