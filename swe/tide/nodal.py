@@ -4,7 +4,7 @@
 
 The sum runs over the constituent's satellites: lines of the tide-generating potential with the same multiples of tau, s and h,
 which a record of a year cannot tell from it (`satellites`). Source of the method: Godin 1972, The Analysis of Tides. Without the
-satellites in p the result is that of Schureman 1958 (US Coast and Geodetic Survey, SP 98) within 0.0015 in f.
+satellites in p the result is that of Schureman 1958 (US Coast and Geodetic Survey, SP 98) within 0.001 in f.
 
 Constituents of the sun have f = 1, u = 0, as in all published harmonic constants. Compound ones take products:
 
