@@ -9,7 +9,7 @@ from pathlib import Path
 import pytest
 
 ROOT = Path(__file__).resolve().parents[2]
-ALL = {"case", "mesh", "operators", "exponential", "tide", "dynamics", "steppers", "parallel", "output", "analysis"}
+ALL = {"case", "mesh", "operators", "exponential", "tide", "dynamics", "steppers", "parallel", "output", "analysis", "atmosphere"}
 
 # Room: what it may import besides itself, errors, constants and the version; "room.module" opens one module of a room.
 ROOMS = {
@@ -17,6 +17,7 @@ ROOMS = {
     "constants": set(),
     "case": set(),
     "mesh": set(),
+    "atmosphere": {"mesh"},
     "exponential": set(),
     "tide": set(),
     "operators": {"mesh"},
@@ -34,7 +35,8 @@ LIBRARIES = {
     "mpi4py": ["parallel/*", "simulation/*", "cli/*"],
     # Besides the room of the files: whoever reads one.
     "netCDF4": ["output/*", "mesh/files.py", "mesh/bed.py", "analysis/opening.py", "analysis/result.py", "simulation/start.py",
-                "simulation/meshing.py"],
+                "simulation/meshing.py", "atmosphere/*"],
+    "cftime": ["atmosphere/*"],
     "matplotlib": ["analysis/figures/*"],
     "petsc4py": ["steppers/reference.py"],
     "pymetis": ["parallel/partition.py"],
