@@ -2,6 +2,7 @@
 
     inertial oscillation    u + i v = U exp(-i f t)                                  exact, nonlinear terms included
     wind                    u + i v = (T/(i f)) (1 - exp(-i f t)),   T = tau/(rho H)
+    turning wind            u + i v = T (exp(i s t) - exp(-i f t)) / (i (s + f))
     quadratic drag          |u| = U/(1 + C_d U t/H), the direction turning at -f
 
 Sources: Gill 1982, section 9.2 for wind and inertial motion (from memory); the drag law is common practice. All verified by
@@ -101,6 +102,32 @@ def test_wind_driven_inertial_motion_has_the_order_of_the_step(stepper, options)
     errors = [worst(blown(stepper, span / n, n, f, **options), wind_driven(f, span)) for n in (40, 80, 160)]
     print(f"errors {errors}")
     assert np.all(np.abs(np.log2(np.array(errors[:-1]) / errors[1:]) - stepper.order) < 0.1)
+
+
+class TurningWind:
+    """Stress WIND exp(i s t) along the normals of a mesh."""
+
+    turn = 3e-4
+
+    def __init__(self, part):
+        self.normal = part.edge_normal[:, 0] - 1j * part.edge_normal[:, 1]
+
+    def stress(self, time):
+        return (WIND * np.exp(1j * self.turn * time) * self.normal).real
+
+
+@pytest.mark.parametrize("name", STEPPERS)
+def test_a_wind_that_changes_in_time_enters_at_the_right_times(name):
+    """u' = -i f u + T exp(i s t): u = T (exp(i s t) - exp(-i f t)) / (i (s + f)); each step keeps its order."""
+    f, span = 1e-4, 6 * HOUR
+    push = WIND / (DENSITY * 50.0)
+    exact = push * (np.exp(1j * TurningWind.turn * span) - np.exp(-1j * f * span)) / (1j * (TurningWind.turn + f))
+    errors = [
+        worst(motion(lattice(50.0), 0j, STEPPERS[name], span / n, n, f=f, forcing=lambda part: (TurningWind(part),)), exact)
+        for n in (12, 24, 48)
+    ]
+    print(f"{name}: errors {errors}")
+    assert np.all(np.abs(np.log2(np.array(errors[:-1]) / errors[1:]) - STEPPERS[name].order) < 0.15)
 
 
 DRAG, DEPTH = 2.5e-3, 10.0

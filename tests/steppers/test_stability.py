@@ -19,12 +19,12 @@ STEPPERS = {
 
 
 @pytest.mark.parametrize("name", STEPPERS)
-@pytest.mark.parametrize("overlap", [1, 2, 4])
+@pytest.mark.parametrize("overlap", [1, 3])
 def test_the_cut_is_stable_while_a_wave_crosses_less_than_the_overlap_in_a_step(name, overlap):
     """Three fifths of the overlap: nothing grows in 200 steps. Three halves of it: what the cut adds grows without limit.
 
     Information beyond overlap layers is missing, so this is the condition of Courant, Friedrichs & Lewy (1928) with the overlap
-    in the place of the spacing; that it decides is measured. Water 100 to 500 m deep, c of the deepest; a hump of 1 mm, no friction.
+    in the place of the spacing; that it decides is measured. Water 100 to 500 m deep, c of the deepest; hump of 1 mm, no drag.
     """
     mesh = bowl(800e3, 600e3, 50e3, least=100.0, deepest=500.0)
     crossing = overlap * 50e3 / np.sqrt(9.81 * 500.0)
