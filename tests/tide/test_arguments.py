@@ -5,8 +5,7 @@ from datetime import datetime
 import numpy as np
 import pytest
 import pyTMD.constituents
-from test_astronomy import ORDINAL_2000, apart
-from test_constituents import SHARED, THEIRS
+from tide_libraries import MJD_2000, ORDINAL_2000, SHARED, THEIRS, apart
 from utide.harmonics import FUV
 
 from swe.constants import DEGREE
@@ -82,7 +81,7 @@ def test_pytmd(moment):
     days = days_since_2000(moment)
     late = terrestrial_offset(days) / DAY
     names = [name.lower() for name in PYTMD]
-    _, _, v = pyTMD.constituents.arguments(np.array([days + 51544.5]), names, deltat=late, corrections="GOT")
+    _, _, v = pyTMD.constituents.arguments(np.array([days + MJD_2000]), names, deltat=late, corrections="GOT")
     ours = Arguments.of(constituents(PYTMD)).astronomical(days)
     assert np.abs(apart(ours, v[0])).max() < 0.01
 

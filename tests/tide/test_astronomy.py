@@ -6,19 +6,14 @@ from pathlib import Path
 
 import numpy as np
 import pytest
+from tide_libraries import ORDINAL_2000, apart
 from utide.astronomy import ut_astron
 
 from swe.errors import InputError
 from swe.tide import astronomy
 from swe.tide.astronomy import days_since_2000, mean_longitudes, rates, terrestrial_offset
 
-ORDINAL_2000 = datetime(2000, 1, 1).toordinal() + 0.5
 MOMENTS = [datetime(year, 1 + year % 12, 5, year % 24, 17) for year in range(1901, 2100, 9)]
-
-
-def apart(a, b):
-    """Difference of angles, degrees, -180 to 180."""
-    return (np.asarray(a) - b + 180.0) % 360.0 - 180.0
 
 
 @pytest.mark.parametrize("moment", MOMENTS, ids=str)

@@ -3,7 +3,8 @@
 import numpy as np
 import pytest
 import tide_catalogues
-from utide._ut_constants import constit_index_dict, ut_constants
+from tide_libraries import SHARED, THEIRS
+from utide._ut_constants import ut_constants
 
 from swe.errors import InputError
 from swe.tide.constituents import TABLE, constituents
@@ -23,9 +24,6 @@ PUBLISHED = {
     "Mm": ((0, 1, 0, -1, 0, 0), 0.5443747, 0.022193, 0.693, 0.022026),
 }
 
-OTHER_NAMES = {"lambda2": "LDA2", "rho1": "RHO1", "sigma1": "SIG1", "theta1": "THE1"}
-THEIRS = {name: constit_index_dict.get(OTHER_NAMES.get(name, name).upper()) for name in TABLE}
-SHARED = [name for name, index in THEIRS.items() if index is not None]
 ASTRONOMICAL = [constituent for constituent in TABLE.values() if constituent.amplitude]
 
 

@@ -7,6 +7,7 @@ import numpy as np
 import pytest
 import pyTMD.astro
 import tide_catalogues
+from tide_libraries import MJD_2000
 
 from swe.constants import DEGREE
 from swe.errors import InputError
@@ -71,7 +72,7 @@ def attraction(days, lon, lat):
     Places in the sky: pyTMD 3.0.9 (series of Meeus 1998). Sidereal time of Greenwich: Meeus 1998, eq. 12.4.
     """
     sky = pyTMD.astro
-    now = np.array([days + terrestrial_offset(days) / 86400.0 + 51544.5])
+    now = np.array([days + terrestrial_offset(days) / 86400.0 + MJD_2000])
     moon = sky.lunar_longitude(now), sky.lunar_latitude(now), sky.lunar_distance(now), 0.0123000371
     sun = sky.solar_longitude(now), np.zeros(1), sky.solar_distance(now), 332946.05
     tilt = sky.mean_obliquity(now)

@@ -3,7 +3,7 @@
 import numpy as np
 import pytest
 import tide_catalogues
-from test_constituents import THEIRS
+from tide_libraries import THEIRS
 from utide._ut_constants import ut_constants
 
 from swe.constants import DEGREE
