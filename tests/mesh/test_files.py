@@ -154,7 +154,7 @@ def test_file_of_another_kind(tmp_path):
     foreign = tmp_path / "foreign.nc"
     with netCDF4.Dataset(foreign, "w") as dataset:
         dataset.createDimension("x", 3)
-    assert "not a mesh file of this program: mesh, face_xyz, node_xyz, edge_xyz and 18 more missing" in refused(
+    assert "not a mesh file of this program: mesh, face_xyz, node_xyz, edge_xyz and 19 more missing" in refused(
         InputError, foreign
     )
 
