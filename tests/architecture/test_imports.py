@@ -40,7 +40,7 @@ LIBRARIES = {
     "matplotlib": ["analysis/figures/*"],
     "petsc4py": ["steppers/reference.py"],
     "pymetis": ["parallel/partition.py"],
-    "shapely": ["mesh/*", "analysis/*", "simulation/*", "cli/*"],
+    "shapely": ["mesh/*", "tide/boundary_constants.py", "analysis/*", "simulation/*", "cli/*"],
 }
 
 

@@ -38,7 +38,10 @@ def test_one_point_serves_the_whole_line(tmp_path):
 @pytest.mark.parametrize(
     "text, message",
     [
-        ("lon,lat,name,amplitude,lag\n", r"mouth.csv:1: column constituent is missing, found lon, lat, name.*must name lon,lat,constituent,amplitude,lag"),
+        (
+            "lon,lat,name,amplitude,lag\n",
+            r"mouth.csv:1: column constituent is missing, found lon, lat, name.*must name lon,lat,constituent,amplitude,lag",
+        ),
         ("", r"mouth.csv:1: column lon is missing, found nothing"),
         (GOOD.replace("0.6", "much"), r"mouth.csv:5: amplitude is 'much'; a number is needed"),
         (GOOD.replace("0.6", "-0.6"), r"mouth.csv:5: amplitude -0.6 m.*allowed are 0 to 20 m"),
