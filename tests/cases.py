@@ -11,7 +11,6 @@ from __future__ import annotations
 import contextlib
 import io
 import json
-import os
 import subprocess
 import sys
 from dataclasses import dataclass
@@ -150,7 +149,9 @@ def write_depth(path: Path, x=(-2e3, 22e3), y=(-2e3, 12e3), depth=20.0, names=("
             axis.setncatts(marks.get(name, {}))
             axis[:] = values
         variable = data.createVariable("depth", "f8", names[::-1])
-        variable.setncatts({"standard_name": "sea_floor_depth_below_mean_sea_level", "units": "m"} if attributes is None else attributes)
+        variable.setncatts(
+            {"standard_name": "sea_floor_depth_below_mean_sea_level", "units": "m"} if attributes is None else attributes
+        )
         variable[:] = depth + slope * first[None, :] + 0.0 * second[:, None]
     return path
 
