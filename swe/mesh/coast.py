@@ -84,7 +84,7 @@ def box_text(box: Box, surface: Surface) -> str:
 
 def _document(path: Path):
     try:
-        text = path.read_text(encoding="utf-8")
+        text = path.read_text(encoding="utf-8-sig")  # some programs put a byte order mark before the text
     except FileNotFoundError:
         raise InputError(f"{path}: no such file; give a GeoJSON file with the water of the basin") from None
     except (OSError, UnicodeDecodeError) as failure:
