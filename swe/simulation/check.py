@@ -10,7 +10,8 @@ from __future__ import annotations
 import math
 from pathlib import Path
 
-from swe.errors import InputError
+from swe.errors import InputError, MeshError
+from swe.mesh.layout import MOST
 from swe.mesh.topology import Mesh
 from swe.parallel.partition import LEAST_FACES
 from swe.simulation.inputs import open_inputs, outlook
@@ -41,6 +42,7 @@ def check(case, ranks: int) -> list[str]:
         return [*_settled(case, mesh, ranks), *_costs(case, plan_of(case, mesh, ranks), mesh.n_faces, ranks)]
     inputs = open_inputs(case)
     seen = outlook(case, inputs)
+    _refuse_too_many_faces(case, seen.faces)
     plan = plan_for(case, math.sqrt(6.0) / seen.crossing_time, ranks)
     faces = round(seen.faces)
     _refuse_count(plan, faces, ranks)
@@ -48,6 +50,16 @@ def check(case, ranks: int) -> list[str]:
         f"water {seen.shallowest:.4g} to {seen.deepest:.4g} m deep, about {faces} faces (the mesh is not made yet: swe mesh)",
         *_costs(case, plan, faces, ranks),
     ]
+
+
+def _refuse_too_many_faces(case, faces: float) -> None:
+    """Raise MeshError for a spacing that the making of the mesh would refuse. Not collective."""
+    if faces > MOST:
+        key = "spacing" if case.mesh.spacing is not None else "finest"
+        raise MeshError(
+            f"{case.where('mesh', key)}: the spacing gives about {faces:.3g} faces in the basin; allowed are {MOST}: "
+            "choose a coarser spacing, or check its unit"
+        )
 
 
 def _settled(case, mesh: Mesh, ranks: int) -> list[str]:
