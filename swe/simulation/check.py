@@ -112,4 +112,3 @@ def _held(faces: int, plan: Plan) -> float:
     own = faces / plan.count
     r, k = math.sqrt(own / 3.0), plan.overlap + 1
     return min(faces, own + 6.0 * r * k + 3.0 * k * k)
-
