@@ -13,6 +13,7 @@ import io
 import json
 import subprocess
 import sys
+import time
 from dataclasses import dataclass
 from pathlib import Path
 
@@ -179,6 +180,36 @@ def started(folder: Path, *words) -> subprocess.Popen:
     """Start `swe WORDS` in a process of its own, in `folder`, with pipes for its output."""
     pipes = {"stdout": subprocess.PIPE, "stderr": subprocess.PIPE, "text": True}
     return subprocess.Popen(command(*words), cwd=folder, env=surroundings(), **pipes)
+
+
+def started_on_ranks(count: int, folder: Path, *words) -> subprocess.Popen:
+    """Start `swe WORDS` on `count` ranks, in `folder`, in a session of its own, with a pipe for all its output."""
+    pipes = {"stdout": subprocess.PIPE, "stderr": subprocess.STDOUT, "text": True}
+    return subprocess.Popen(
+        launch.command(count, *command(*words)), cwd=folder, env=surroundings(), start_new_session=True, **pipes
+    )
+
+
+def children(pid: int) -> list[int]:
+    """Return the processes that a process has started and that still run."""
+    return [int(child) for task in Path(f"/proc/{pid}/task").iterdir() for child in (task / "children").read_text().split()]
+
+
+def wait_until(condition, job: subprocess.Popen, seconds: float = 60.0) -> None:
+    """Wait for a condition; fail when the job ends before, or after `seconds`."""
+    end = time.monotonic() + seconds
+    while not condition():
+        assert job.poll() is None, f"ended with {job.returncode}: {job.communicate()}"
+        assert time.monotonic() < end, "waited in vain"
+        time.sleep(0.02)
+
+
+def wait_for_claim(folder: Path, seconds: float = 20.0) -> None:
+    """Wait until the process that claims a result folder has ended: mpiexec may leave before the ranks that it killed."""
+    end = time.monotonic() + seconds
+    while (claim := folder / "in-use").exists() and Path(f"/proc/{json.loads(claim.read_text())['pid']}").exists():
+        assert time.monotonic() < end, "the claim is still held"
+        time.sleep(0.02)
 
 
 def ranks(count: int, folder: Path, *words, timeout=120, **environment: str) -> Done:
