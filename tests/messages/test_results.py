@@ -123,7 +123,8 @@ def test_a_checkpoint_of_another_mesh(folder):
 def test_a_checkpoint_of_other_physics_names_what_differs(folder):
     write_case(folder, {"drag.bottom": "0.003", "wind.east": '"0.2 Pa"'})
     resumed(
-        folder, "step-000000000030.checkpoint: belongs to other physics (drag.bottom was 0.0025, is 0.003, wind.east was 0.3, is 0.2)",
+        folder, "step-000000000030.checkpoint: belongs to other physics ",
+        "(drag.bottom was 0.0025, is 0.003, wind.east was 0.3, is 0.2)",
         "resume with the case as it was, or start anew with --overwrite",
     )  # fmt: skip
 
@@ -152,7 +153,7 @@ def test_a_duration_that_is_over_and_a_step_that_does_not_fit(folder):
 
 def test_all_checkpoints_damaged(folder):
     for path in (folder / "results" / "lake" / "checkpoints").iterdir():
-        path.write_bytes(path.read_bytes()[:1000])
+        path.write_bytes(path.read_bytes()[:9000])
     resumed(
         folder,
         "results/lake/checkpoints: no sound checkpoint to resume from (found 2 damaged: ",
