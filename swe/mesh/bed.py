@@ -53,8 +53,8 @@ MARGIN = 0.1
 
 
 @dataclass(frozen=True)
-class _Axis:
-    """One coordinate of the file: variable, dimension, values in input coordinates."""
+class Axis:
+    """One coordinate of a file: variable, dimension, values in input coordinates."""
 
     name: str
     dimension: str
@@ -73,7 +73,7 @@ def read_grid(path: str | Path, surface: Surface, water: shapely.Geometry, varia
         raise InputError(f"{path}: no such file; give a netCDF file with a depth grid")
     try:
         with netCDF4.Dataset(path) as dataset:
-            axes = _axes(path, dataset, surface)
+            axes = axes_of(path, dataset, surface)
             name = _depth_variable(path, dataset, axes, variable)
             return _read_window(path, dataset, surface, axes, name, box_of(water, surface))
     except (OSError, RuntimeError) as failure:
@@ -81,7 +81,11 @@ def read_grid(path: str | Path, surface: Surface, water: shapely.Geometry, varia
         raise InputError(f"{path}: not a netCDF file, or cut short ({reason}); fetch it again") from None
 
 
-def _axes(path: Path, dataset: netCDF4.Dataset, surface: Surface) -> tuple[_Axis, _Axis]:
+def axes_of(path: str | Path, dataset: netCDF4.Dataset, surface: Surface) -> tuple[Axis, Axis]:
+    """Return the two coordinates of a grid file for a basin on `surface`. Not collective.
+
+    path   names the file in messages. Raises InputError when there are none.
+    """
     found = [_axis(path, dataset, *marks) for marks in AXES[surface.spherical]]
     if None not in found:
         return found[0], found[1]
@@ -89,10 +93,11 @@ def _axes(path: Path, dataset: netCDF4.Dataset, surface: Surface) -> tuple[_Axis
     wanted = " and ".join(f"{marks[0]} ({marks[3][0]})" for marks in AXES[surface.spherical])
     listed = ", ".join(dataset.variables) or "nothing"
     hint = "; it has those of the other surface: check whether the basin is on a plane or a sphere" if other else ""
+    hint = hint or "; name them so, or give them the attribute standard_name"
     raise InputError(f"{path}: no one-dimensional coordinates {wanted}; found {listed}{hint}")
 
 
-def _axis(path: Path, dataset: netCDF4.Dataset, standard_name: str, units: tuple, axis: str, names: tuple) -> _Axis | None:
+def _axis(path: str | Path, dataset: netCDF4.Dataset, standard_name: str, units: tuple, axis: str, names: tuple) -> Axis | None:
     lines = [v for v in dataset.variables.values() if v.ndim == 1 and v.dtype.kind in "iuf" and v.shape[0] > 1]
     tests = (
         lambda v: _text(v, "standard_name") == standard_name,
@@ -105,7 +110,7 @@ def _axis(path: Path, dataset: netCDF4.Dataset, standard_name: str, units: tuple
             values = np.ma.filled(variable[:].astype(float), np.nan)
             if not units:
                 values = values * _metres(path, variable)
-            return _Axis(variable.name, variable.dimensions[0], values)
+            return Axis(variable.name, variable.dimensions[0], values)
     return None
 
 
@@ -113,14 +118,14 @@ def _text(variable: netCDF4.Variable, attribute: str) -> str:
     return str(getattr(variable, attribute, "")).strip()
 
 
-def _metres(path: Path, variable: netCDF4.Variable) -> float:
+def _metres(path: str | Path, variable: netCDF4.Variable) -> float:
     unit = _text(variable, "units")
     if unit and unit.lower() not in METRES:
         raise InputError(f"{path}: unit {unit!r} of {variable.name}; allowed are {', '.join(METRES)}")
     return METRES[unit.lower()] if unit else 1.0
 
 
-def _depth_variable(path: Path, dataset: netCDF4.Dataset, axes: tuple[_Axis, _Axis], wanted: str | None) -> str:
+def _depth_variable(path: Path, dataset: netCDF4.Dataset, axes: tuple[Axis, Axis], wanted: str | None) -> str:
     grids = [v for v in dataset.variables.values() if _is_grid(v, axes)]
     listed = ", ".join(v.name for v in grids) or "no variable on both coordinates"
     if wanted is not None:
@@ -136,7 +141,7 @@ def _depth_variable(path: Path, dataset: netCDF4.Dataset, axes: tuple[_Axis, _Ax
     raise InputError(f"{path}: no variable looks like depth; found {listed}; name the variable, or add standard_name or positive")
 
 
-def _is_grid(variable: netCDF4.Variable, axes: tuple[_Axis, _Axis]) -> bool:
+def _is_grid(variable: netCDF4.Variable, axes: tuple[Axis, Axis]) -> bool:
     sizes = dict(zip(variable.dimensions, variable.shape, strict=True))
     lines = [sizes.pop(axis.dimension, None) for axis in axes]
     return None not in lines and all(size == 1 for size in sizes.values()) and variable.dtype.kind in "iuf"
@@ -176,9 +181,7 @@ def _direction(path: Path, variable: netCDF4.Variable) -> int:
     return sign
 
 
-def _read_window(
-    path: Path, dataset: netCDF4.Dataset, surface: Surface, axes: tuple[_Axis, _Axis], name: str, box: Box
-) -> GridBed:
+def _read_window(path: Path, dataset: netCDF4.Dataset, surface: Surface, axes: tuple[Axis, Axis], name: str, box: Box) -> GridBed:
     variable = dataset.variables[name]
     scale = _direction(path, variable) * _metres(path, variable)
     west, south, east, north = box
@@ -199,7 +202,7 @@ def _read_window(
     return GridBed(f"{path.name} ({name})", x, y, filled_from_wet(x, y, np.where(wet, depth, 0.0), wet, aspect), ~wet, centre)
 
 
-def _ascending(path: Path, axis: _Axis, centre: float | None) -> tuple[np.ndarray, np.ndarray]:
+def _ascending(path: Path, axis: Axis, centre: float | None) -> tuple[np.ndarray, np.ndarray]:
     """Return file indices and values of an axis in ascending order, longitudes brought near `centre`."""
     step = np.diff(axis.values)
     if not (np.isfinite(axis.values).all() and ((step > 0).all() or (step < 0).all())):
@@ -209,7 +212,7 @@ def _ascending(path: Path, axis: _Axis, centre: float | None) -> tuple[np.ndarra
     return index, values
 
 
-def _refuse_uncovered(path: Path, surface: Surface, axes: tuple[_Axis, _Axis], x: np.ndarray, y: np.ndarray, box: Box) -> None:
+def _refuse_uncovered(path: Path, surface: Surface, axes: tuple[Axis, Axis], x: np.ndarray, y: np.ndarray, box: Box) -> None:
     """Refuse a grid that ends more than half a step inside the basin."""
     missing = _missing_sides(x, y, box)
     if not missing:
@@ -225,12 +228,12 @@ def _refuse_uncovered(path: Path, surface: Surface, axes: tuple[_Axis, _Axis], x
 
 
 def _missing_sides(x: np.ndarray, y: np.ndarray, box: Box) -> list[str]:
-    half_x, half_y = (abs(axis[-1] - axis[0]) / (len(axis) - 1) / 2 for axis in (x, y))
-    sides = {
-        "west": box[0] < x[0] - half_x, "south": box[1] < y[0] - half_y,
-        "east": box[2] > x[-1] + half_x, "north": box[3] > y[-1] + half_y,
-    }  # fmt: skip
-    return [side for side, missing in sides.items() if missing]
+    """Return the sides on which a box ends more than half a step, and a little for rounding, beyond ascending axes."""
+    missing = []
+    for axis, low, high, sides in ((x, box[0], box[2], ("west", "east")), (y, box[1], box[3], ("south", "north"))):
+        missing += [sides[0]] if low < axis[0] - 0.51 * (axis[1] - axis[0]) else []
+        missing += [sides[1]] if high > axis[-1] + 0.51 * (axis[-1] - axis[-2]) else []
+    return [side for side in ("west", "south", "east", "north") if side in missing]
 
 
 def _window(
@@ -250,7 +253,7 @@ def _window(
     return index, values
 
 
-def _block(variable: netCDF4.Variable, axes: tuple[_Axis, _Axis], rows: np.ndarray, columns: np.ndarray) -> np.ndarray:
+def _block(variable: netCDF4.Variable, axes: tuple[Axis, Axis], rows: np.ndarray, columns: np.ndarray) -> np.ndarray:
     """Return the values (rows, columns) as floats, NaN where missing; only the stretches needed are read."""
     x, y = axes
     parts = []

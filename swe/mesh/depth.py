@@ -114,7 +114,7 @@ class GridBed:
     depth: np.ndarray
     filled: np.ndarray
     centre: float | None
-    guess = "rest on grid points without water, filled from the nearest wet ones"
+    guess = "rest in part on grid points without water, filled from the nearest wet ones"
 
     def at(self, points: np.ndarray) -> tuple[np.ndarray, np.ndarray]:
         """Return bilinear depths; guessed where one of the four grid points was filled. Not collective."""

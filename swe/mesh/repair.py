@@ -40,10 +40,11 @@ OVERSHOOT = 1.2
 PUSHES = 6
 """Pushes in a round."""
 
-EVENING, CHANGING, ROUNDS = 2, 4, 12
-"""The rounds, from 0, where steps 2 and 3 begin, and their number. Trials end in round 1, seldom 3."""
+EVENING, CHANGING, ROUNDS = 2, 4, 20
+"""The rounds, from 0, where steps 2 and 3 begin, and their number. After 40 sweeps trials end in round 1, seldom 5; after a
+single sweep not always in 20."""
 
-SWEEPS = 5
+SWEEPS = 10
 """Even sweeps of step 2."""
 
 LONG = 1.35

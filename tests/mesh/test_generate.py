@@ -251,16 +251,15 @@ from swe.mesh.depth import ConstantBed
 from swe.mesh.generate import generate
 from swe.mesh.spacing import {rule}
 from swe.mesh.surface import Plane
-start = time.perf_counter()
 mesh, _ = generate(lake(), Plane(), {call}, ConstantBed(40.0), growth=0.15, least_depth=1.0, sweeps=40, seed=1)
-print(mesh.n_faces, time.perf_counter() - start, resource.getrusage(resource.RUSAGE_SELF).ru_maxrss / 1024**2)
+print(mesh.n_faces, time.process_time(), resource.getrusage(resource.RUSAGE_SELF).ru_maxrss / 1024**2)
 """
 
 
 @pytest.mark.slow
-@pytest.mark.parametrize("rule, call", [("Constant", "Constant(111.0)"), ("NearCoast", "NearCoast(60.0, 300.0, 0.1)")])
+@pytest.mark.parametrize("rule, call", [("Constant", "Constant(111.0)"), ("NearCoast", "NearCoast(30.0, 160.0, 0.1)")])
 def test_100000_faces_in_3_minutes_and_2_gib(rule, call, request):
-    """The limits are the project's promise for one core; measured in a process of its own."""
+    """The limits are the project's promise for one core: processor time, imports included, in a process of its own."""
     script = LARGE.format(tests=str(request.config.rootpath / "tests"), rule=rule, call=call)
     done = subprocess.run([sys.executable, "-c", script], capture_output=True, text=True, cwd=request.config.rootpath, check=True)
     faces, seconds, memory = (float(word) for word in done.stdout.split())
