@@ -105,6 +105,8 @@ class Run:
                         self.setup.stepper, self.setup.agreement, self.time, plan.step, self.scale, request.asked
                     )
                 except NumericalFailure as failure:
+                    if not self.together(failure):
+                        raise
                     raise self._failed(failure) from None
                 self.number += 1
                 self.scale = report.scale
@@ -131,6 +133,10 @@ class Run:
         energy = row.get("kinetic_energy", 0.0) + row.get("potential_energy", 0.0)
         level = max(report.highest, -report.lowest)
         return Reading(self.time, row.get("mass_drift", 0.0), energy, report.mismatch, self.spent.repeats, report.speed, level)
+
+    def together(self, end: Stopped | NumericalFailure) -> bool:
+        """Return whether all ranks are here with the same error, so that they can do something together."""
+        return end.everywhere or self.comm.size == 1
 
     def _failed(self, failure: NumericalFailure) -> NumericalFailure:
         """Save the last good state and say when and where the run failed."""
@@ -249,8 +255,9 @@ def _to_the_end(run: Run, result: ResultFolder | None) -> dict:
         run.steps()
         run.recorder.flush(run.time)
         run.save()
-    except (Stopped, NumericalFailure):
-        _conclude(run, result, finished=False)
+    except (Stopped, NumericalFailure) as end:
+        if run.together(end):
+            _conclude(run, result, finished=False)
         raise
     return _conclude(run, result, finished=True)
 

@@ -46,25 +46,41 @@ DEFECT = """
 import sys
 from mpi4py import MPI
 from swe.cli.main import main
-from swe.simulation.recorder import Recorder
-see = Recorder.see
-def broken(self, number, *rest):
-    if number == 3 and MPI.COMM_WORLD.rank == 1:
-        raise ZeroDivisionError("a defect")
-    see(self, number, *rest)
-Recorder.see = broken
+from swe.errors import NumericalFailure
+from swe.steppers.two_stage import TwoStage
+stage, calls = TwoStage.stage, []
+def broken(self, *rest):
+    calls.append(1)
+    if len(calls) == 7 and MPI.COMM_WORLD.rank == 1:
+        raise {error}
+    return stage(self, *rest)
+TwoStage.stage = broken
 sys.exit(main(sys.argv[1:]))
 """
 
 
-def test_a_defect_on_one_rank_ends_the_job_with_its_traceback(tmp_path):
+@pytest.mark.parametrize(
+    "error, code, parts",
+    [
+        (
+            "ZeroDivisionError('a defect')",
+            1,
+            ("Traceback", "ZeroDivisionError: a defect", "rank 1 of 2: unexpected error, the job is ended"),
+        ),
+        ("NumericalFailure('no number here, and rank 0 does not know')", 4, ("no number here, and rank 0 does not know",)),
+    ],
+    ids=["unexpected", "not agreed"],
+)
+def test_an_error_of_one_rank_ends_the_job(error, code, parts, tmp_path):
+    """The other rank waits for a message that never comes; it must not wait for ever."""
     write_case(tmp_path)
-    words = [sys.executable, "-c", DEFECT, "run", "lake.toml", "--quiet"]
+    words = [sys.executable, "-c", DEFECT.format(error=error), "run", "lake.toml", "--quiet"]
     began = time.monotonic()
     job = launch.on_ranks(2, *words, cwd=tmp_path, timeout=60, **surroundings())
     assert time.monotonic() - began < 50  # long before the time-out
-    assert job.returncode == 1, job.stdout
-    in_order(job.stdout, "Traceback", "ZeroDivisionError: a defect", "rank 1 of 2: unexpected error, the job is ended")
+    assert job.returncode == code, job.stdout
+    in_order(job.stdout, *parts)
+    assert job.stdout.count(parts[-1]) == 1
     wait_for_claim(tmp_path / "results" / "lake")
     assert call(tmp_path, "run", "lake.toml", "--overwrite", "--quiet").code == 0
 
