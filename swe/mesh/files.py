@@ -50,6 +50,7 @@ DESCRIPTION = {
     "node_coast": ("1 where the node touches fewer than three wet faces", None),
     "border_kind": ("what lies beyond a border edge: 0 coast, 1 water held elsewhere, 2 open sea", None),
     "depth": ("resting depth below the datum, positive down", "m"),
+    "face_outer": ("1 where the level is given from outside, beyond an open boundary", None),
     "face_id": ("number of the face in the whole mesh", None),
     "edge_id": ("number of the edge in the whole mesh", None),
     "node_id": ("number of the node in the whole mesh", None),
