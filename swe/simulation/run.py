@@ -23,9 +23,10 @@ from swe.mesh.topology import Mesh
 from swe.output.checkpoint import Checkpoint
 from swe.output.folder import ResultFolder
 from swe.output.stations import Sampling, Station, sample
-from swe.output.summary import versions, write_summary
-from swe.parallel.ranks import StopRequest, on_root, peak_memory
+from swe.output.summary import write_summary
+from swe.parallel.ranks import StopRequest, on_root
 from swe.simulation import progress as person
+from swe.simulation.account import Counts, account
 from swe.simulation.meshing import mesh_for
 from swe.simulation.progress import Progress, Reading
 from swe.simulation.progress import clock as model_clock
@@ -36,23 +37,6 @@ from swe.simulation.start import begin, put
 
 STATION_REACH = 1.0
 """A station may lie this many largest spacings from the nearest face centre before it counts as on land."""
-
-
-@dataclass
-class Counts:
-    """What a run has spent, this session and those before it."""
-
-    products: int = 0
-    repeats: int = 0
-    messages: int = 0
-    bytes_sent: int = 0
-    largest_mismatch: float = 0.0
-    mismatch_sum: float = 0.0
-    largest_error: float = 0.0
-    wall_seconds: float = 0.0
-
-    def as_dict(self) -> dict:
-        return dict(vars(self))
 
 
 @dataclass
@@ -159,62 +143,7 @@ class Run:
 
     def totals(self) -> Counts:
         """Return what was spent in all sessions so far, summed over the ranks."""
-        halo, now = self.setup.basin.halo, self.spent
-        products, messages, sent = self.comm.allreduce(
-            _Sum((int(self.setup.basin.products.sum()), halo.messages, halo.bytes_sent)), op=MPI.SUM
-        )
-        return Counts(
-            now.products + products, now.repeats, now.messages + messages, now.bytes_sent + sent, now.largest_mismatch,
-            now.mismatch_sum, now.largest_error, now.wall_seconds + clock.monotonic() - self.began,
-        )  # fmt: skip
-
-    def summary(self, finished: bool) -> dict:
-        """Return the summary of the run (the same on all ranks but for rank 0's versions)."""
-        case, plan, spent = self.case, self.setup.plan, self.totals()
-        seconds = self.setup.basin.phases.seconds
-        return {
-            "case": case.name,
-            "title": case.title,
-            "finished": finished,
-            "ranks": self.comm.size,
-            "subdomains": plan.count,
-            "faces": self.setup.share.n_faces,
-            "edges": self.setup.share.n_edges,
-            "mesh_checksum": self.setup.share.checksum,
-            "stepper": case.method.stepper,
-            "operator": case.method.operator,
-            "action": case.method.action,
-            "action_tolerance": case.method.action_tolerance,
-            "mismatch_tolerance_metres": case.subdomains.mismatch_tolerance,
-            "step_seconds": plan.step,
-            "z": plan.z,
-            "overlap": plan.overlap,
-            "steps": self.number,
-            "model_seconds": self.time,
-            "wall_seconds": spent.wall_seconds,
-            "simulated_over_real": self.time / max(spent.wall_seconds, 1e-9),
-            "mass_drift_relative": self.recorder.mass_drift(),
-            "largest_mismatch": spent.largest_mismatch,
-            "localisation_error_metres": spent.mismatch_sum,
-            "largest_action_error": spent.largest_error,
-            "repeats": spent.repeats,
-            "products": spent.products,
-            "messages": spent.messages,
-            "bytes_sent": spent.bytes_sent,
-            "peak_memory_bytes": self.comm.allreduce(peak_memory(), op=MPI.MAX),
-            "phases": self.comm.allgather({name: round(value, 3) for name, value in seconds.items()}),
-            "faces_by_rank": self.comm.allgather(sum(part.n_owned for part in self.setup.basin.parts)),
-            "faces_held_by_rank": self.comm.allgather(sum(part.mesh.n_faces for part in self.setup.basin.parts)),
-            "versions": versions(MPI.Get_library_version()),
-            "settings": case.to_text(),
-        }
-
-
-class _Sum(tuple):
-    """A tuple that adds elementwise in a reduction."""
-
-    def __add__(self, other):
-        return _Sum(a + b for a, b in zip(self, other, strict=True))
+        return self.spent.with_session(self.comm, self.setup.basin, clock.monotonic() - self.began)
 
 
 def run_case(comm: MPI.Comm, case, folder: Path, resume: bool, overwrite: bool, quiet: bool) -> dict:
@@ -264,7 +193,7 @@ def _to_the_end(run: Run, result: ResultFolder | None) -> dict:
 
 def _conclude(run: Run, result: ResultFolder | None, finished: bool) -> dict:
     """Close the files, so that the summary says "finished" of complete ones only, and write it."""
-    summary = run.summary(finished)
+    summary = account(run.setup, run.case, run.number, run.totals(), run.recorder.mass_drift(), finished)
     on_root(run.comm, "closing the result files", run.recorder.close)
     on_root(run.comm, "writing the summary", lambda: write_summary(result.summary, summary))
     return summary
