@@ -191,7 +191,9 @@ def _read_window(path: Path, dataset: netCDF4.Dataset, surface: Surface, axes: t
     _refuse_uncovered(path, surface, axes, x, y, box)
     columns, x = _window(path, axes[0].name, columns, x, west, east)
     rows, y = _window(path, axes[1].name, rows, y, south, north)
-    depth = scale * _block(variable, axes, rows, columns)
+    values = _block(variable, axes, rows, columns)
+    _refuse_undeclared_fill(path, name, values)
+    depth = scale * values
     wet = np.isfinite(depth) & (depth > 0)
     if not wet.any():
         highest = f"greatest depth {np.nanmax(depth):.4g} m" if np.isfinite(depth).any() else "all values are missing"
@@ -200,6 +202,21 @@ def _read_window(path: Path, dataset: netCDF4.Dataset, surface: Surface, axes: t
         )
     aspect = float(np.cos(np.radians((south + north) / 2))) if surface.spherical else 1.0
     return GridBed(f"{path.name} ({name})", x, y, filled_from_wet(x, y, np.where(wet, depth, 0.0), wet, aspect), ~wet, centre)
+
+
+FILLS = (9999.0, 99999.0, 32767.0, 32768.0, 999.25, 1e20)
+"""Magnitudes that common practice uses for "no value" (no source). A depth or height of exactly one of them is none."""
+
+
+def _refuse_undeclared_fill(path: Path, name: str, values: np.ndarray) -> None:
+    """Raise InputError where a usual mark for "no value" stands as a number: it would become a deep hole or a peak."""
+    for fill in FILLS:
+        count = int(np.count_nonzero(np.abs(values) == fill))
+        if count:
+            raise InputError(
+                f"{path}: {name} is exactly {fill:g} or -{fill:g} at {count} grid points, which looks like an undeclared mark for "
+                "no value; declare it with the attribute _FillValue or missing_value"
+            )
 
 
 def _ascending(path: Path, axis: Axis, centre: float | None) -> tuple[np.ndarray, np.ndarray]:

@@ -17,7 +17,7 @@ from swe.errors import InputError, MeshError
 from swe.mesh.coast import chart_of, charted
 from swe.mesh.culling import Culled, cull
 from swe.mesh.delaunay import plane_triangles
-from swe.mesh.depth import Bed, depth_at
+from swe.mesh.depth import Bed, DepthReport, depth_at
 from swe.mesh.generation_report import (
     GenerationReport,
     across_land,
@@ -81,6 +81,7 @@ def generate(
     points, faces, outer = _ordered(layout.centres, culled.kept, outer, triangles)
     mesh = _built(points, faces, surface, chart)
     depth, depth_report = depth_at(bed, chart.from_chart(points[faces]), least_depth)
+    _refuse_mostly_guessed(depth_report)
     mesh = with_outer(with_depth(mesh, depth), outer)
     mesh = with_depth(mesh, outer_depth(mesh))
     check_invariants(mesh)
@@ -90,6 +91,18 @@ def generate(
         repair=layout.repair, depth=depth_report, **said,
     )  # fmt: skip
     return mesh, report
+
+
+MOST_GUESSED = 0.6
+"""Largest share of faces whose depth may be a guess. A grid whose sign is turned has water only where there is land."""
+
+
+def _refuse_mostly_guessed(report: DepthReport) -> None:
+    if report.guessed > MOST_GUESSED * report.faces:
+        raise InputError(
+            f"{report.source}: {report.guessed} of {report.faces} faces {report.guess}; allowed are {MOST_GUESSED:.0%}: check the "
+            "direction of the depth (attribute positive), its unit, and that it covers the basin"
+        )
 
 
 def _basin(water: shapely.Geometry, finest: float) -> Basin:

@@ -319,3 +319,21 @@ def test_soundings_swapped_or_no_place(tmp_path):
     )
     path = csv(tmp_path, "lon,lat,depth\n500,107,10\n")
     assert "latitudes -90 to 90" in refused(read_soundings, path, SPHERE, basin)
+
+
+def test_an_undeclared_mark_for_no_value_is_refused(tmp_path):
+    path = tmp_path / "depth.nc"
+    x = np.linspace(0.0, 10e3, 21)
+    with netCDF4.Dataset(path, "w") as dataset:
+        for axis in ("x", "y"):
+            dataset.createDimension(axis, x.size)
+            variable = dataset.createVariable(axis, "f8", (axis,))
+            variable.setncatts({"standard_name": f"projection_{axis}_coordinate", "units": "m"})
+            variable[:] = x
+        height = dataset.createVariable("height", "f4", ("y", "x"))
+        height.setncatts({"units": "m", "positive": "up", "long_name": "height above the datum"})
+        values = np.full((x.size, x.size), -20.0)
+        values[3, 4] = -9999.0
+        height[:] = values
+    with pytest.raises(InputError, match=r"height is exactly 9999 or -9999 at 1 grid points.*declare it with the attribute _FillValue"):
+        read_grid(path, Plane(), shapely.box(1e3, 1e3, 9e3, 9e3), "height")

@@ -265,3 +265,16 @@ def test_100000_faces_in_3_minutes_and_2_gib(rule, call, request):
     faces, seconds, memory = (float(word) for word in done.stdout.split())
     print(f"{faces:.0f} faces, {seconds:.0f} s, {memory:.2f} GiB")
     assert faces > 95_000 and seconds < 180 and memory < 2
+
+
+def test_a_grid_whose_direction_is_turned_is_refused():
+    """Where all the water lies on dry grid points, its depth would be a guess from far away."""
+
+    class Turned:
+        source, guess = "depth.nc (z)", "rest on grid points without water, filled from the nearest wet ones"
+
+        def at(self, points):
+            return np.full(len(points), 30.0), np.ones(len(points), dtype=bool)
+
+    with pytest.raises(InputError, match=r"faces rest on grid points without water.*check the direction of the depth"):
+        generate(shapely.box(0, 0, 20e3, 15e3), Plane(), Constant(1500.0), Turned(), growth=0.15, least_depth=2.0, sweeps=30, seed=1)
