@@ -23,6 +23,8 @@ def main(folder: str, seconds: float, test: str) -> None:
     faulthandler.register(signal.SIGTERM, file=page, chain=True)
     faulthandler.dump_traceback_later(seconds, exit=True, file=page)
     options = "-q --slow --no-header -p no:cacheprovider -o faulthandler_timeout=0 -o timeout=0".split()
+    # A place of its own: the ranks would tidy up the common one at the same time and stumble over each other.
+    options.append(f"--basetemp={folder}/temporary-{MPI.COMM_WORLD.rank}")
     code = pytest.main([test, *options])
     sys.stdout.flush()
     if code:
