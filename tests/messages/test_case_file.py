@@ -116,3 +116,12 @@ def test_arguments_that_are_no_arguments(tmp_path):
         done = call(tmp_path, *words)
         assert done.code == 2 and "usage: swe" in done.err and "Traceback" not in done.err
     assert "a whole number from 1 up is needed" in call(tmp_path, "check", "a", "--ranks", "0").err
+
+
+def test_tides_that_are_no_tides(tmp_path):
+    done = call(tmp_path, "tides", "X9")
+    assert done.code == 2
+    in_order(done.line, 'tidal constituent "X9" is not known; known are M2, S2, ')
+    done = call(tmp_path, "tides", "--date", "yesterday")
+    assert done.code == 2
+    in_order(done.line, "--date yesterday: is no date; write 2031-03-01")

@@ -51,6 +51,17 @@ def test_a_signal_to_one_process(number, tmp_path):
     goes_on(tmp_path)
 
 
+def test_the_keyboard_before_the_first_step_leaves_nothing_claimed(tmp_path, monkeypatch):
+    def interrupted(*_):
+        raise KeyboardInterrupt
+
+    monkeypatch.setattr("swe.simulation.run.mesh_for", interrupted)
+    write_case(tmp_path)
+    done = call(tmp_path, "run", "lake.toml")
+    assert done.code == 6 and done.line.startswith("stopped from the keyboard before the first step")
+    assert not (tmp_path / "results" / "lake" / "in-use").exists()
+
+
 def mpiexec_of(job):
     (mpiexec,) = children(job.pid)
     return mpiexec
