@@ -14,6 +14,7 @@ print(
     f"products a step and subdomain {summary['products'] / steps / summary['subdomains']:.1f}, "
     f"messages a step and rank {summary['messages'] / steps / summary['ranks']:.1f}, "
     f"bytes a step and rank {summary['bytes_sent'] / steps / summary['ranks']:.0f}, "
-    f"peak memory of a rank {summary['peak_memory_bytes'] / 1e6:.0f} MB, {summary['peak_memory_bytes'] / held:.0f} bytes a held face "
+    f"peak memory of a rank {summary['peak_memory_bytes'] / 1e6:.0f} MB, "
+    f"{summary['peak_memory_bytes'] / held:.0f} bytes a held face "
     f"(interpreter included); largest seconds of a rank by phase: {phases}"
 )

@@ -18,6 +18,7 @@ LAKE = shapely.Polygon(
 @cache
 def lake_points(seed, sweeps, scale=1.0, origin=(0.0, 0.0)):
     """Random points, denser in the west (spacing 0.8 to 2.4), and which of them are wet."""
+
     def spacing(p):
         return 0.8 + 1.6 * np.clip((p[:, 0] + 8) / 57, 0, 1)
 

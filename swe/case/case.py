@@ -16,10 +16,12 @@ from swe.case.schema import (
     EarthSection,
     MeshSection,
     MethodSection,
+    OpenSection,
     OutputSection,
     StartSection,
     StationSection,
     SubdomainsSection,
+    TideSection,
     TimeSection,
     WindSection,
 )
@@ -42,6 +44,8 @@ class Case:
     earth: EarthSection = section(EarthSection, "rotation, gravity, density")
     drag: DragSection = section(DragSection, "friction")
     wind: WindSection = section(WindSection, "constant stress on the surface")
+    tide: TideSection = section(TideSection, "tides: the equilibrium tide in the basin; those of open boundaries stand there")
+    openings: tuple[OpenSection, ...] = section(OpenSection, "a part of the outline where the basin is open to the sea", "open")
     start: StartSection = section(StartSection, "water at the beginning")
     time: TimeSection = section(TimeSection, "begin, duration, step")
     method: MethodSection = section(MethodSection, "time stepping")

@@ -160,16 +160,24 @@ def whole_steps(draft: Draft) -> None:
             draft.wrong(path, f"{what} {show(step, TIME)}", "whole multiples of the step, one at least", hint)
 
 
-def station_names(draft: Draft) -> None:
-    """Station names differ."""
-    first: dict[str, int] = {}
-    for table in _stations(draft):
-        path = (*table, "name")
-        name = draft.values.get(path)
-        if name in first and not draft.is_broken(path):
-            draft.wrong(path, f"station {first[name] + 1} has the same name", "a name of its own for each station")
-        elif name is not None:
-            first[name] = table[1]
+def names_differ(draft: Draft) -> None:
+    """Station names differ, and so do names of open boundaries."""
+    for kind, words in (("station", "station"), ("open", "open boundary")):
+        first: dict[str, int] = {}
+        for table in tables(draft, SECTIONS[kind]):
+            path = (*table, "name")
+            name = draft.values.get(path)
+            if name in first and not draft.is_broken(path):
+                draft.wrong(path, f"{words} {first[name] + 1} has the same name", f"a name of its own for each {words}")
+            elif name is not None:
+                first[name] = table[1]
+
+
+def equilibrium_on_the_sphere(draft: Draft) -> None:
+    """`tide.equilibrium` is given only for a basin on the sphere."""
+    path = ("tide", "equilibrium")
+    if draft.given("tide.equilibrium") and draft.sound("basin.surface") and draft.value("basin.surface") == "plane":
+        draft.wrong(path, "not used in this case: the basin lies on a plane", hint="drive it from open boundaries: [[open]]")
 
 
 def positions(draft: Draft) -> None:
@@ -231,7 +239,8 @@ RULES = (
     action_fits,
     one_overlap,
     whole_steps,
-    station_names,
+    names_differ,
+    equilibrium_on_the_sphere,
     positions,
     stations_and_interval,
 )

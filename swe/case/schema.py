@@ -203,13 +203,14 @@ class WindSection:
 class StartSection:
     kind: str = key(
         Choice(("rest", "hump", "file")),
-        'water at the beginning: "rest", level 0; "hump", at rest with a raised level; "file", as an earlier run left it',
+        'water at the beginning: "rest", level 0; "hump", at rest with a raised level; "file", as a file tells',
         "rest",
         '"hump"',
     )
     file: Path | None = key(
-        InputFile("netCDF file of fields of this program"),
-        "fields of an earlier run on the same mesh; its last record is taken",
+        InputFile("netCDF file of fields of this program or after the CF conventions"),
+        "fields of an earlier run on the same mesh, or a level above the datum on a grid of coordinates, at rest; "
+        "the last time counts",
         When("start.kind", {"file": REQUIRED}),
         '"fields.nc"',
     )
@@ -364,6 +365,47 @@ class CheckpointSection:
         "interval of saved states in model time, a whole multiple of the step; without it only a stopped run saves one",
         OPTIONAL,
         '"1 d"',
+    )
+
+
+@dataclass(frozen=True)
+class TideSection:
+    equilibrium: tuple[str, ...] | None = key(
+        Listing(Text()),
+        "constituents of the equilibrium tide that act on the basin itself (swe tides lists them); only on the sphere",
+        OPTIONAL,
+        '["M2", "S2", "K1", "O1"]',
+    )
+    ramp: float = key(
+        Quantity(units.TIME, 0.0, 3.15576e9),
+        "time over which all tides grow smoothly from nothing; 0: they act in full from the beginning",
+        0.0,
+        '"1 d"',
+    )
+
+
+@dataclass(frozen=True)
+class OpenSection:
+    """Radiating after Flather 1976; the clamped law of swe.dynamics.opening is not offered, see there."""
+
+    name: str = key(Text(), "name of the open boundary, different from all others", REQUIRED, '"western mouth"')
+    line: Path = key(
+        InputFile("GeoJSON file"),
+        "line along the outline of the water where the basin is open; coordinates as those of the coastline",
+        REQUIRED,
+        '"mouth.geojson"',
+    )
+    constants: Path | None = key(
+        InputFile("CSV file"),
+        "harmonic constants beyond it: columns lon, lat (or x, y), constituent, amplitude (m), lag (degrees on Greenwich)",
+        OPTIONAL,
+        '"mouth.csv"',
+    )
+    level: float = key(
+        Quantity(units.LENGTH, -100.0, 100.0),
+        "mean level beyond the boundary, above the datum",
+        0.0,
+        '"0.1 m"',
     )
 
 

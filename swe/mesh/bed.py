@@ -214,8 +214,8 @@ def _refuse_undeclared_fill(path: Path, name: str, values: np.ndarray) -> None:
         count = int(np.count_nonzero(np.abs(values) == fill))
         if count:
             raise InputError(
-                f"{path}: {name} is exactly {fill:g} or -{fill:g} at {count} grid points, which looks like an undeclared mark for "
-                "no value; declare it with the attribute _FillValue or missing_value"
+                f"{path}: {name} is exactly {fill:g} or -{fill:g} at {count} grid points, an undeclared mark for "
+                "no value by its looks; declare it with the attribute _FillValue or missing_value"
             )
 
 

@@ -100,8 +100,8 @@ MOST_GUESSED = 0.6
 def _refuse_mostly_guessed(report: DepthReport) -> None:
     if report.guessed > MOST_GUESSED * report.faces:
         raise InputError(
-            f"{report.source}: {report.guessed} of {report.faces} faces {report.guess}; allowed are {MOST_GUESSED:.0%}: check the "
-            "direction of the depth (attribute positive), its unit, and that it covers the basin"
+            f"{report.source}: {report.guessed} of {report.faces} faces {report.guess}; allowed are {MOST_GUESSED:.0%}: "
+            "check the direction of the depth (attribute positive), its unit, and that it covers the basin"
         )
 
 

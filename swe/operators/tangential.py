@@ -7,8 +7,9 @@ s as in `divergence`. W is antisymmetric because the fractions R of one face sum
 from e' to e add up to 1. Antisymmetry is what keeps the Coriolis force from doing work, and the choice of R what keeps
 geostrophic states steady. Each pair is computed once and mirrored, so W + W^T = 0 bit by bit.
 
-Border edges have neither row nor column: u = 0 on a coast. Nor have edges between two outer faces of an open boundary; the
-tangential velocity on an edge across that boundary is then known from its inner side only, which counts twice in T.
+Border edges have neither row nor column: u = 0 on a coast. Nor have edges between two outer faces of an open boundary: on an
+edge across that boundary only the inner side turns the current. Its control volume is half as deep (d/2, as for the
+gradient), so T has d/2 in the place of d there and the turning does no work.
 Source: Thuburn, Ringler, Skamarock & Klemp 2009, J. Comput. Phys. 228, 8321.
 """
 
@@ -19,7 +20,7 @@ from itertools import combinations
 import numpy as np
 from scipy import sparse
 
-from swe.mesh.topology import open_edges, still_edges
+from swe.mesh.topology import gradient_distance, still_edges
 from swe.operators.sparse import compressed
 
 
@@ -52,7 +53,5 @@ def antisymmetric_weights(mesh) -> sparse.csr_array:
 def tangential(mesh, weights: sparse.csr_array) -> sparse.csr_array:
     """Return T, (ne, ne), dimensionless: u_t = T u. Not collective."""
     rows = np.repeat(np.arange(mesh.n_edges), np.diff(weights.indptr))
-    sides = np.ones(mesh.n_edges)
-    sides[open_edges(mesh)[0]] = 2.0
-    values = -sides[rows] * weights.data * mesh.edge_length[weights.indices] / mesh.edge_distance[rows]
+    values = -weights.data * mesh.edge_length[weights.indices] / gradient_distance(mesh)[rows]
     return sparse.csr_array((values, weights.indices, weights.indptr), shape=weights.shape)

@@ -5,7 +5,7 @@
 (t points from the first node to the second, so the second lies to the left of n and n runs counter-clockwise round it.)
 
 Coast, free slip: the water exerts no tangential stress on land, so the vorticity of a coast node is zero: its row is
-empty. So is that of a node between two outer faces of an open boundary, whose currents nobody knows. Columns of border
+empty. So is that of a node on an open boundary, where the currents beyond are not known. Columns of border
 edges are dropped (u = 0 on a coast; unknown where a restricted mesh is cut).
 Source: Ringler et al. 2010, J. Comput. Phys. 229, 3065.
 """
@@ -29,6 +29,6 @@ def vorticity(mesh) -> sparse.csr_array:
 
 
 def beyond(mesh) -> np.ndarray:
-    """Return (nn,) bool: nodes that touch two outer faces or more. Not collective."""
+    """Return (nn,) bool: nodes that touch an outer face. Not collective."""
     present = mesh.node_faces >= 0
-    return (mesh.face_outer[np.where(present, mesh.node_faces, 0)] & present).sum(axis=1) > 1
+    return (mesh.face_outer[np.where(present, mesh.node_faces, 0)] & present).any(axis=1)

@@ -109,7 +109,10 @@ def ledger_quantities() -> dict[str, Quantity]:
     """Return the sums and counts of a whole basin by name. Not collective."""
     table = [
         Quantity("mass_anomaly", "mass of the water above the datum", "kg", "basin"),
-        Quantity("mass_drift", "change of mass since the start over the mass at the start", "1", "basin"),
+        Quantity("mass_outflow", "mass that left through open boundaries since the start", "kg", "basin"),
+        Quantity(
+            "mass_drift", "change of mass that no outflow explains since the start over the mass at the start", "1", "basin"
+        ),
         Quantity("kinetic_energy", "kinetic energy of the basin", "J", "basin"),
         Quantity("potential_energy", "available potential energy of the basin, above the datum", "J", "basin"),
         Quantity("potential_enstrophy", "sum of area times depth times half the squared potential vorticity", "m s-2", "basin"),

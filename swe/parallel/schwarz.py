@@ -87,6 +87,11 @@ class Basin:
         self._open = [_owned_open_edges(part) for part in self.parts]
         self._rim_weight = [_level_per_speed(part, gravity) for part in self.parts]
 
+    def settle(self, time: float) -> None:
+        """Put what is given from outside at `time` (s) into the states. Not collective."""
+        for patch, state in zip(self.patches, self.states, strict=True):
+            state.eta = patch.settled(state.eta, time)
+
     def scale(self, time: float, step: float) -> float:
         """Return the largest energy norm of dt F over all subdomains, for the first step. Collective."""
         norms = [

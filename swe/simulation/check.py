@@ -11,6 +11,7 @@ import math
 from pathlib import Path
 
 from swe.errors import InputError, MeshError
+from swe.mesh.coast import box_of
 from swe.mesh.layout import MOST
 from swe.mesh.topology import Mesh
 from swe.parallel.partition import LEAST_FACES
@@ -19,7 +20,8 @@ from swe.simulation.meshing import kept_mesh
 from swe.simulation.recorder import fields_of
 from swe.simulation.run import stations_on
 from swe.simulation.setup import EXPLICIT_LIMIT, Plan, plan_for, plan_of
-from swe.simulation.start import last_record
+from swe.simulation.start import first_state
+from swe.simulation.start_file import level_before_mesh
 
 BASE_BYTES = 130e6
 """Resident memory of a rank before it holds a face: interpreter and libraries. Measured on Debian 12."""
@@ -41,6 +43,8 @@ def check(case, ranks: int) -> list[str]:
     if mesh is not None:
         return [*_settled(case, mesh, ranks), *_costs(case, plan_of(case, mesh, ranks), mesh.n_faces, ranks)]
     inputs = open_inputs(case)
+    if case.start.kind == "file":
+        level_before_mesh(case, inputs.surface, box_of(inputs.water, inputs.surface))
     seen = outlook(case, inputs)
     _refuse_too_many_faces(case, seen.faces)
     plan = plan_for(case, math.sqrt(6.0) / seen.crossing_time, ranks)
@@ -65,8 +69,7 @@ def _refuse_too_many_faces(case, faces: float) -> None:
 def _settled(case, mesh: Mesh, ranks: int) -> list[str]:
     """Check what needs the mesh and describe it."""
     sampling = stations_on(case, mesh)
-    if case.start.kind == "file":
-        last_record(case, mesh)
+    first_state(case, mesh)
     _refuse_count(plan_of(case, mesh, ranks), mesh.n_faces, ranks)
     lines = [f"mesh of {mesh.n_faces} faces, {mesh.depth.min():.4g} to {mesh.depth.max():.4g} m deep"]
     for station, distance, face in zip(sampling.stations, sampling.distance, sampling.face, strict=True):

@@ -19,6 +19,7 @@ from swe.mesh.soundings import read_soundings
 from swe.mesh.spacing import ByDepth, Constant, NearCoast, Smallest, Spacing, Within
 from swe.mesh.surface import Plane, Sphere, Surface
 from swe.mesh.topology import Mesh
+from swe.simulation.boundary import lines_of
 
 LOOK = 300
 """Points along each side of the basin's box where bed and spacing are looked at before there is a mesh; arbitrary."""
@@ -67,6 +68,7 @@ def generated(case) -> tuple[Mesh, list[str]]:
     mesh, report = generate(
         inputs.water, inputs.surface, inputs.spacing, inputs.bed,
         growth=growth, least_depth=case.depth.least, sweeps=case.mesh.sweeps, seed=case.mesh.seed,
+        openings=lines_of(case),
     )  # fmt: skip
     return mesh, report.lines()
 

@@ -25,9 +25,7 @@ KEY = "inputs_key"
 """Attribute of a kept mesh: what it was made from."""
 
 
-def mesh_for(
-    case, folder: Path, say: Callable[[str], None], require: Callable[[Mesh], None] = lambda mesh: None
-) -> Mesh:
+def mesh_for(case, folder: Path, say: Callable[[str], None], require: Callable[[Mesh], None] = lambda mesh: None) -> Mesh:
     """Return the whole mesh of a case, generating and keeping it in `folder` when needed. Not collective.
 
     require   raises when the mesh is not the one wanted; asked before a new mesh takes the place of a kept one
@@ -55,9 +53,7 @@ def kept_mesh(case, folder: Path, say: Callable[[str], None] = lambda text: None
     return None
 
 
-def make_mesh(
-    case, path: Path, say: Callable[[str], None], require: Callable[[Mesh], None] = lambda mesh: None
-) -> Mesh:
+def make_mesh(case, path: Path, say: Callable[[str], None], require: Callable[[Mesh], None] = lambda mesh: None) -> Mesh:
     """Generate the mesh of a case, check it, write it to `path`, and say how it came out. Not collective."""
     mesh, lines = generated(case)
     check_invariants(mesh)
@@ -75,6 +71,8 @@ def inputs_key(case) -> str:
         for name, value in sorted(vars(part).items()):
             digest.update(f"{name}=".encode())
             digest.update(value.read_bytes() if isinstance(value, Path) else repr(value).encode())
+    for item in case.openings:
+        digest.update(item.line.read_bytes())
     return digest.hexdigest()
 
 

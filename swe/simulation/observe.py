@@ -75,7 +75,7 @@ class Stations:
         self._rows.append([(states[p].eta[f], currents[p][0, f], currents[p][1, f]) for _, p, f in self._here])
 
     def collect(self) -> tuple[np.ndarray, np.ndarray] | None:
-        """Return (times (k,), samples (k, n, 3): level, east, north) since the last call on rank 0, None elsewhere. Collective."""
+        """Return times (k,) and samples (k, n, 3), level, east, north, since the last call on rank 0; else None. Collective."""
         mine = ([number for number, _, _ in self._here], np.array(self._rows).reshape(len(self._times), len(self._here), 3))
         times = np.array(self._times)
         self._times, self._rows = [], []

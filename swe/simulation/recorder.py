@@ -69,6 +69,7 @@ class Recorder:
         self.stations = Stations(self.comm, setup.basin.parts, faces)
         self.volume_start = 0.0
         self.anomaly_start = 0.0
+        self.outflow_before = 0.0
         self.row: dict[str, float] = {}
         self._rows: list[tuple[float, dict[str, float]]] = []
         self._files = contextlib.ExitStack()
@@ -109,7 +110,7 @@ class Recorder:
     def _volumes(self) -> tuple[float, float]:
         basin = self.setup.basin
         rows = [
-            [sum_of(patch.water, state.eta, slice(part.n_owned)) for sum_of in (diagnostics.volume, diagnostics.volume_anomaly)]
+            [sum_of(patch.water, state.eta, _inside(part)) for sum_of in (diagnostics.volume, diagnostics.volume_anomaly)]
             for part, patch, state in zip(basin.parts, basin.patches, basin.states, strict=True)
         ]
         volume, anomaly = total(self.comm, np.array(rows))
@@ -139,7 +140,7 @@ class Recorder:
         basin, density = self.setup.basin, self.case.earth.density
         sums, largest = [], np.full(3, -np.inf)
         for part, patch, state, current in zip(basin.parts, basin.patches, basin.states, currents, strict=True):
-            water, faces = patch.water, slice(part.n_owned)
+            water, faces = patch.water, _inside(part)
             sums.append([
                 diagnostics.volume_anomaly(water, state.eta, faces),
                 diagnostics.kinetic_energy(water, state.eta, state.u, part.owned_edges),
@@ -152,10 +153,12 @@ class Recorder:
         for row, products in zip(sums, basin.products, strict=True):
             row[-1] = float(products)
         anomaly, kinetic, potential, enstrophy, products = total(self.comm, np.array(sums))
+        outflow = self._outflow()
         largest = self.setup.largest(largest)
         self.row = {
             "mass_anomaly": density * anomaly,
-            "mass_drift": (anomaly - self.anomaly_start) / self.volume_start,
+            "mass_outflow": density * outflow,
+            "mass_drift": (anomaly + outflow - self.anomaly_start) / self.volume_start,
             "kinetic_energy": kinetic,
             "potential_energy": potential,
             "potential_enstrophy": enstrophy,
@@ -208,7 +211,12 @@ class Recorder:
         }
         for name, row in zip(Extremes.NAMES, self._whole_extremes() or [None] * 6, strict=True):
             arrays[name] = row
-        meta = meta | {"time": time, "volume_start": self.volume_start, "anomaly_start": self.anomaly_start}
+        meta = meta | {
+            "time": time,
+            "volume_start": self.volume_start,
+            "anomaly_start": self.anomaly_start,
+            "outflow": self._outflow(),
+        }
         path = on_root(
             self.comm, "writing the checkpoint", lambda: checkpoint.save(self.folder.checkpoints, number, arrays, meta)
         )
@@ -217,14 +225,19 @@ class Recorder:
     def restore(self, arrays: dict | None, meta: dict) -> None:
         """Take up extremes and sums where a checkpoint left them."""
         self.volume_start, self.anomaly_start = meta["volume_start"], meta["anomaly_start"]
+        self.outflow_before = meta["outflow"]
         for row, name in enumerate(Extremes.NAMES):
             parts = self.setup.faces.scatter(arrays[name] if self.root else None)
             for values, part in zip(self.extremes.values, parts, strict=True):
                 values[row] = part[: values.shape[1]]
 
     def mass_drift(self) -> float:
-        """Return the change of mass since the start over the mass at the start, now."""
-        return (self._volumes()[1] - self.anomaly_start) / self.volume_start
+        """Return the change of mass that no outflow explains over the mass at the start, now."""
+        return (self._volumes()[1] + self._outflow() - self.anomaly_start) / self.volume_start
+
+    def _outflow(self) -> float:
+        """Return the water that left through open boundaries since the start, m3."""
+        return self.outflow_before + float(total(self.comm, self.setup.basin.outflow[:, None])[0])
 
     def close(self) -> None:
         """Close the files. Not collective. Raises FileError."""
@@ -236,3 +249,9 @@ class Recorder:
     def __exit__(self, kind, failure, trace) -> None:
         # With a failure on its way, trouble in closing is not reported over it.
         self._files.__exit__(kind, failure, trace)
+
+
+def _inside(part) -> slice | np.ndarray:
+    """Return the owned faces that are water of the basin, not beyond an open boundary."""
+    outer = part.mesh.face_outer[: part.n_owned]
+    return np.flatnonzero(~outer) if outer.any() else slice(part.n_owned)

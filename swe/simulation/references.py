@@ -28,7 +28,9 @@ def _generates(case) -> bool:
 
 
 REFERENCES = (
-    Reference("mesh", "Du, Q., Faber, V. & Gunzburger, M. 1999: Centroidal Voronoi tessellations. SIAM Rev. 41, 637-676.", _generates),
+    Reference(
+        "mesh", "Du, Q., Faber, V. & Gunzburger, M. 1999: Centroidal Voronoi tessellations. SIAM Rev. 41, 637-676.", _generates
+    ),
     Reference(
         "areas on the sphere",
         "Van Oosterom, A. & Strackee, J. 1983: The solid angle of a plane triangle. IEEE Trans. Biomed. Eng. 30, 125-126.",
@@ -46,7 +48,11 @@ REFERENCES = (
         "dynamics for arbitrarily-structured C-grids. J. Comput. Phys. 229, 3065-3090.",
         _always,
     ),
-    Reference("currents at face centres", "Perot, B. 2000: Conservation properties of unstructured staggered mesh schemes. J. Comput. Phys. 159, 58-89.", _always),
+    Reference(
+        "currents at face centres",
+        "Perot, B. 2000: Conservation properties of unstructured staggered mesh schemes. J. Comput. Phys. 159, 58-89.",
+        _always,
+    ),
     Reference(
         "two-stage exponential step",
         "Cox, S. M. & Matthews, P. C. 2002: Exponential time differencing for stiff systems. J. Comput. Phys. 176, 430-455.",
@@ -83,13 +89,19 @@ REFERENCES = (
         "Benzi, M. & Razouk, N. 2007: Decay bounds and O(n) algorithms for approximating functions of sparse matrices. ETNA 28, 16-39.",
         _exponential,
     ),
-    Reference("overlapping subdomains", "Gander, M. J. 2008: Schwarz methods over the course of time. ETNA 31, 228-255.", _always),
+    Reference(
+        "overlapping subdomains", "Gander, M. J. 2008: Schwarz methods over the course of time. ETNA 31, 228-255.", _always
+    ),
     Reference(
         "partition into subdomains",
         "Karypis, G. & Kumar, V. 1998: A fast and high quality multilevel scheme for partitioning irregular graphs. SIAM J. Sci. Comput. 20, 359-392.",
         _always,
     ),
-    Reference("files", "Eaton, B. et al.: NetCDF Climate and Forecast (CF) Metadata Conventions, version 1.11; UGRID Conventions 1.0.", _always),
+    Reference(
+        "files",
+        "Eaton, B. et al.: NetCDF Climate and Forecast (CF) Metadata Conventions, version 1.11; UGRID Conventions 1.0.",
+        _always,
+    ),
 )
 """Citations are from memory unless shared checks confirm them; the volumes and pages should be looked up before they are quoted."""
 

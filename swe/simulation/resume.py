@@ -19,7 +19,7 @@ from swe.output import checkpoint
 from swe.output.checkpoint import Checkpoint
 from swe.simulation.recorder import fields_of
 
-PHYSICS = ("earth", "drag", "wind")
+PHYSICS = ("earth", "drag", "wind", "tide")
 """Sections of the case that a checkpoint must share with the case that resumes it."""
 
 WHOLE = 1e-6
@@ -31,6 +31,8 @@ REMEDY = "resume with the case as it was, or start anew with --overwrite"
 def physics_key(case) -> str:
     """Return what a checkpoint must share with the case that resumes it, as JSON by "section.key". Not collective."""
     settings = {f"{name}.{key}": value for name in PHYSICS for key, value in vars(getattr(case, name)).items()}
+    for item in case.openings:
+        settings |= {f"open.{item.name}.{key}": value for key, value in vars(item).items()}
     return json.dumps(settings | {"time.begin": case.time.begin.isoformat()}, default=str, sort_keys=True)
 
 

@@ -14,14 +14,17 @@ from mpi4py import MPI
 
 from swe.constants import DEGREE, EARTH_ROTATION
 from swe.dynamics.bounds import GravityBound
+from swe.dynamics.forcing.tide import EquilibriumHead
 from swe.dynamics.forcing.wind import ConstantWind
 from swe.dynamics.physics import CoriolisLaw, FPlane, NoRotation, Physics, Sphere
 from swe.exponential.bounds import overlap_for
 from swe.mesh.topology import Mesh
 from swe.parallel.distribute import Share, distribute
+from swe.parallel.ranks import on_root
 from swe.parallel.reductions import Assembly
 from swe.parallel.schwarz import Agreement, Basin
-from swe.simulation.basin import basin_of
+from swe.simulation.basin import basin_of, closed
+from swe.simulation.boundary import outsides_of
 from swe.steppers.contract import Stepper
 from swe.steppers.one_stage import OneStage
 from swe.steppers.runge_kutta import RungeKutta4
@@ -90,8 +93,15 @@ def coriolis_of(case) -> CoriolisLaw:
 
 def forcing_of(case):
     """Return the maker of a case's forcing on a restricted mesh. Not collective."""
-    east, north = case.wind.east, case.wind.north
-    return lambda mesh: (ConstantWind.on(mesh, east, north),) if east or north else ()
+    east, north, tide = case.wind.east, case.wind.north, case.tide
+
+    def on(mesh: Mesh) -> tuple:
+        wind = (ConstantWind.on(mesh, east, north),) if east or north else ()
+        if not tide.equilibrium:
+            return wind
+        return (*wind, EquilibriumHead.on(mesh, case.earth.gravity, tide.equilibrium, case.time.begin, tide.ramp))
+
+    return on
 
 
 def stepper_of(case) -> Stepper:
@@ -135,10 +145,17 @@ def _overlap(case, z: float) -> int:
 def prepare(comm: MPI.Comm, case, mesh: Mesh | None) -> Setup:
     """Hand out rank 0's mesh and build everything on it. Collective."""
     plan = comm.bcast(plan_of(case, mesh, comm.size) if comm.rank == 0 else None, root=0)
+    outsides = comm.bcast(on_root(comm, "reading the open boundaries", outsides_of, case, mesh), root=0)
     share = distribute(comm, mesh, plan.count, plan.overlap)
     method = case.method
     basin = basin_of(
-        comm, share, physics_of(case), forcing_of(case), bool(method.rotation_in_operator), bool(method.refresh_depth)
+        comm,
+        share,
+        physics_of(case),
+        forcing_of(case),
+        bool(method.rotation_in_operator),
+        bool(method.refresh_depth),
+        outsides.on if outsides else closed,
     )
     return Setup(
         comm,

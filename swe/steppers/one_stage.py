@@ -56,7 +56,8 @@ class OneStage:
     ) -> StageResult:
         operator = work["operator"]
         rim = patch.rates(beyond(patch, start, latest), time + 0.5 * step) - work["rates"]
-        action = phi_action(operator, rim, step, (2, 3), work["allowed"], fitting(operator, self.method), self.largest)
+        allowed = max(work["allowed"], self.tolerance * step * float(np.linalg.norm(operator.weights * rim)))
+        action = phi_action(operator, rim, step, (2, 3), allowed, fitting(operator, self.method), self.largest)
         u = work["u"] + step * action.values[0][patch.mf :]
         transport = work["transport"] + step * operator.transport(action.values[1])
         return StageResult(u, transport, action.products, action.error, 0.0, action.reason)

@@ -38,7 +38,9 @@ class BoundaryConstants:
         line   shapely LineString or MultiLineString in input coordinates
         """
         stretch = np.array([np.cos(DEGREE * self.points[:, 1].mean()) if spherical else 1.0, 1.0])
-        flat = shapely.transform(shapely.line_merge(line) if line.geom_type == "MultiLineString" else line, lambda at: at * stretch)
+        flat = shapely.transform(
+            shapely.line_merge(line) if line.geom_type == "MultiLineString" else line, lambda at: at * stretch
+        )
         here = shapely.line_locate_point(flat, shapely.points(places * stretch))
         there = shapely.line_locate_point(flat, shapely.points(self.points * stretch))
         order = np.argsort(there)
@@ -74,7 +76,8 @@ def _check_header(path: Path, found: list[str] | None, axes: tuple[str, str]) ->
     missing = [name for name in wanted if name not in (found or ())]
     if missing:
         raise InputError(
-            f"{path}:1: column {missing[0]} is missing, found {', '.join(found or ['nothing'])}; the header must name {','.join(wanted)}"
+            f"{path}:1: column {missing[0]} is missing, found {', '.join(found or ['nothing'])}; "
+            f"the header must name {','.join(wanted)}"
         )
 
 
@@ -87,9 +90,13 @@ def _entry(where: str, row: dict, axes: tuple[str, str]) -> tuple[tuple[float, f
             raise InputError(f"{where}: {name} is {row[name]!r}; a number is needed") from None
     first, second, amplitude, lag = numbers
     if not np.all(np.isfinite(numbers)) or not 0.0 <= amplitude <= 20.0 or not -360.0 <= lag <= 360.0:
-        raise InputError(f"{where}: amplitude {amplitude:g} m, lag {lag:g} degrees; allowed are 0 to 20 m and -360 to 360 degrees")
+        raise InputError(
+            f"{where}: amplitude {amplitude:g} m, lag {lag:g} degrees; allowed are 0 to 20 m and -360 to 360 degrees"
+        )
     if axes == ("lon", "lat") and not (-180.0 <= first <= 360.0 and -90.0 <= second <= 90.0):
-        raise InputError(f"{where}: longitude {first:g}, latitude {second:g}; allowed are -180 to 360 and -90 to 90: are they swapped?")
+        raise InputError(
+            f"{where}: longitude {first:g}, latitude {second:g}; allowed are -180 to 360 and -90 to 90: are they swapped?"
+        )
     try:
         (chosen,) = constituents([row["constituent"]])
     except InputError as unknown:
@@ -103,6 +110,8 @@ def _gathered(path: Path, table: dict[tuple[float, float], dict[str, complex]]) 
     names = tuple(next(iter(table.values())))
     for place, row in table.items():
         for name in {*names} ^ {*row}:
-            raise InputError(f"{path}: constituent {name} is not given for every point, for example {place}; give the same ones everywhere")
+            raise InputError(
+                f"{path}: constituent {name} is not given for every point, for example {place}; give the same ones everywhere"
+            )
     constants = np.array([[row[name] for row in table.values()] for name in names])
     return BoundaryConstants(names, np.array(list(table)), constants)

@@ -12,8 +12,8 @@ from swe.case import parse_case, place_of, read_case
 from swe.errors import CaseError, FileError
 
 ROOT = Path(__file__).resolve().parents[2]
-SECTIONS = ", ".join(f"[{name}]" for name in "basin depth mesh earth drag wind start time method subdomains".split())
-SECTIONS += ", [output], [checkpoint], [[station]]"
+SECTIONS = ", ".join(f"[{name}]" for name in "basin depth mesh earth drag wind tide".split())
+SECTIONS += ", [[open]], [start], [time], [method], [subdomains], [output], [checkpoint], [[station]]"
 MANY = """\
 titel = "A misspelt key"
 

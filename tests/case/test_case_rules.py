@@ -83,8 +83,8 @@ SERIES = {"output.stations_every": '"10 min"'}
             {"start.kind": '"file"'},
             "",
             [
-                '[start] file: missing; needed with [start] kind = "file"; allowed: netCDF file of fields of this program, '
-                'path from the folder of the case file; for example: file = "fields.nc"'
+                '[start] file: missing; needed with [start] kind = "file"; allowed: netCDF file of fields of this program '
+                'or after the CF conventions, path from the folder of the case file; for example: file = "fields.nc"'
             ],
         ),
         # not used
@@ -432,3 +432,15 @@ def test_a_broken_key_still_counts_as_given(tmp_path):
         '[mesh] spacing = "4 km"',
         '[mesh] finest = "1 kms"',
     ]
+
+
+def test_the_equilibrium_tide_needs_the_sphere(tmp_path):
+    text = case_text({"tide.equilibrium": '["M2"]'})
+    (mistake,) = mistakes(tmp_path, text)
+    assert "[tide] equilibrium" in mistake and "the basin lies on a plane" in mistake and "[[open]]" in mistake
+
+
+def test_names_of_open_boundaries_differ(tmp_path):
+    boundary = '\n[[open]]\nname = "mouth"\nline = "mouth.geojson"\n'
+    (mistake,) = mistakes(tmp_path, case_text({}, 2 * boundary))
+    assert "open boundary 1 has the same name" in mistake

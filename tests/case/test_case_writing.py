@@ -75,6 +75,7 @@ def test_summary_for_people(tmp_path):
         "drag.viscosity                  0 m2/s   (default)",
         "wind.east                       0 Pa   (default)",
         "wind.north                      0 Pa   (default)",
+        "tide.ramp                       0 s   (default)",
         "start.kind                      rest   (default)",
         "time.begin                      2031-01-01T00:00:00Z",
         "time.duration                   1 d",

@@ -335,5 +335,7 @@ def test_an_undeclared_mark_for_no_value_is_refused(tmp_path):
         values = np.full((x.size, x.size), -20.0)
         values[3, 4] = -9999.0
         height[:] = values
-    with pytest.raises(InputError, match=r"height is exactly 9999 or -9999 at 1 grid points.*declare it with the attribute _FillValue"):
+    with pytest.raises(
+        InputError, match=r"height is exactly 9999 or -9999 at 1 grid points.*declare it with the attribute _FillValue"
+    ):
         read_grid(path, Plane(), shapely.box(1e3, 1e3, 9e3, 9e3), "height")

@@ -277,4 +277,6 @@ def test_a_grid_whose_direction_is_turned_is_refused():
             return np.full(len(points), 30.0), np.ones(len(points), dtype=bool)
 
     with pytest.raises(InputError, match=r"faces rest on grid points without water.*check the direction of the depth"):
-        generate(shapely.box(0, 0, 20e3, 15e3), Plane(), Constant(1500.0), Turned(), growth=0.15, least_depth=2.0, sweeps=30, seed=1)
+        generate(
+            shapely.box(0, 0, 20e3, 15e3), Plane(), Constant(1500.0), Turned(), growth=0.15, least_depth=2.0, sweeps=30, seed=1
+        )

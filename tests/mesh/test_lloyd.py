@@ -61,8 +61,10 @@ def test_energy_falls_with_every_sweep():
 def test_spacing_follows_the_density():
     # Spacing wanted: 1 to 2 across the torus. Points start with about the right density, as a generator would.
     rng = np.random.default_rng(3)
+
     def wanted(p):
         return 1.5 + 0.5 * np.sin(2 * np.pi * p[:, 0])
+
     points = rng.random((4000, 2))
     points = points[rng.random(len(points)) < 0.25 * wanted(points) ** -2]
     for _ in range(80):

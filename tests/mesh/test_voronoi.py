@@ -24,6 +24,7 @@ def cells(mesh):
 
 def spherical_triangle(a, b, c):
     """Area of a spherical triangle on the unit sphere by its angles (Girard), independent of the code's formula."""
+
     def corner(p, q, r):
         u, v = np.cross(p, q), np.cross(p, r)
         return np.arctan2(np.linalg.norm(np.cross(u, v), axis=-1), (u * v).sum(axis=-1))
@@ -139,7 +140,7 @@ def test_a_region_by_projection_equals_the_same_cells_of_the_globe_by_hull():
     globe_part = sphere_mesh(points, wet, 6.4e6)
     region = sphere_mesh(points[near] * 7.0, wet[near], 6.4e6)
     check_invariants(region)
-    assert np.array_equal(globe_part.edge_faces[:globe_part.n_inner], region.edge_faces[:region.n_inner])
+    assert np.array_equal(globe_part.edge_faces[: globe_part.n_inner], region.edge_faces[: region.n_inner])
     assert np.array_equal(globe_part.node_faces, region.node_faces)
     for name in ("edge_length", "edge_distance", "face_area", "node_area", "kite_area", "node_xyz"):
         assert getattr(region, name) == pytest.approx(getattr(globe_part, name), rel=1e-9, abs=1e-3)

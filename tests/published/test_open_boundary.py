@@ -144,7 +144,7 @@ def test_clamped_boundary_holds_its_tide():
 
 
 def response(mesh: Mesh, frequency: float) -> np.ndarray:
-    """Complex level of the faces when the boundary level is cos(frequency t): (i w - L) x = b, L and b as the steppers see them."""
+    """Complex level of the faces with cos(frequency t) on the boundary: (i w - L) x = b, L and b as the steppers see them."""
     rig = Rig(mesh, 1, 1, physics(f=0.0), height=0.0, on=MPI.COMM_SELF, opening=opened(mesh, False, lambda time: 1.0))
     (patch,), (state,) = rig.basin.patches, rig.basin.states
     wave = patch.linear_operator("wave", state, 0.0)

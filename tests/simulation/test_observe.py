@@ -48,7 +48,11 @@ def test_extremes_and_stations_see_every_step(mesh):
     east, north = (np.array([matrix @ u for _, u in fields]) for matrix in (first, second))
     speed = np.hypot(east, north)
     times = STEP * np.arange(13)
-    for values, time, series, pick in ((rows[0], rows[1], eta, np.argmax), (rows[2], rows[3], eta, np.argmin), (rows[4], rows[5], speed, np.argmax)):
+    for values, time, series, pick in (
+        (rows[0], rows[1], eta, np.argmax),
+        (rows[2], rows[3], eta, np.argmin),
+        (rows[4], rows[5], speed, np.argmax),
+    ):
         place = pick(series, axis=0)
         np.testing.assert_allclose(values, np.take_along_axis(series, place[None], axis=0)[0], rtol=1e-12, atol=1e-14)
         assert np.mean(time == times[place]) > 0.99  # round-off may move a tie

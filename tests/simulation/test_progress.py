@@ -10,7 +10,9 @@ from swe.simulation.progress import Progress, Reading, clock, is_terminal
 READING = Reading(43_200.0, 1.5e-16, 2.5e12, 3e-6, 2, 0.41, 0.73)
 
 
-@pytest.mark.parametrize("seconds, text", [(0, "0 d 00:00"), (86_400 + 6.5 * 3600, "1 d 06:30"), (59.0, "0 d 00:01"), (863_940, "9 d 23:59")])
+@pytest.mark.parametrize(
+    "seconds, text", [(0, "0 d 00:00"), (86_400 + 6.5 * 3600, "1 d 06:30"), (59.0, "0 d 00:01"), (863_940, "9 d 23:59")]
+)
 def test_model_time_is_days_and_hours(seconds, text):
     assert clock(seconds) == text
 
@@ -20,7 +22,15 @@ def test_a_line_names_every_quantity_with_its_unit():
     Progress(0.0, 86_400.0, out, bar=False).show(READING)
     (line,) = out.getvalue().splitlines()
     assert line.startswith("0 d 12:00 of 1 d 00:00, ")
-    for part in ("x real time", "mass error 1.5e-16", "energy 2.5e+12 J", "mismatch 3.0e-06 m", "repeats 2", "|u| <= 0.41 m/s", "|level| <= 0.73 m"):
+    for part in (
+        "x real time",
+        "mass error 1.5e-16",
+        "energy 2.5e+12 J",
+        "mismatch 3.0e-06 m",
+        "repeats 2",
+        "|u| <= 0.41 m/s",
+        "|level| <= 0.73 m",
+    ):
         assert part in line
     assert "to go" in line or "ends" in line
 
