@@ -90,6 +90,16 @@ REFERENCES = (
         _exponential,
     ),
     Reference(
+        "radiating open boundaries",
+        "Flather, R. A. 1976: A tidal model of the north-west European continental shelf. Mem. Soc. R. Sci. Liege 6(10), 141-164.",
+        lambda case: bool(case.openings),
+    ),
+    Reference(
+        "equilibrium tide",
+        "Hartmann, T. & Wenzel, H.-G. 1995: The HW95 tidal potential catalogue. Geophys. Res. Lett. 22, 3553-3556.",
+        lambda case: bool(case.tide.equilibrium),
+    ),
+    Reference(
         "overlapping subdomains", "Gander, M. J. 2008: Schwarz methods over the course of time. ETNA 31, 228-255.", _always
     ),
     Reference(

@@ -34,8 +34,16 @@ ROOMS = {
 LIBRARIES = {
     "mpi4py": ["parallel/*", "simulation/*", "cli/*"],
     # Besides the room of the files: whoever reads one.
-    "netCDF4": ["output/*", "mesh/files.py", "mesh/bed.py", "analysis/opening.py", "analysis/result.py", "simulation/start.py",
-                "simulation/meshing.py", "atmosphere/*"],
+    "netCDF4": [
+        "output/*",
+        "mesh/files.py",
+        "mesh/bed.py",
+        "analysis/opening.py",
+        "analysis/result.py",
+        "simulation/start_file.py",
+        "simulation/meshing.py",
+        "atmosphere/*",
+    ],
     "cftime": ["atmosphere/*"],
     "matplotlib": ["analysis/figures/*"],
     "petsc4py": ["steppers/reference.py"],
