@@ -72,6 +72,9 @@ EXPLICIT = {
 }
 """Changes for the other steppers."""
 
+MOUTH = '\n[[open]]\nname = "mouth"\nline = "mouth.geojson"\nconstants = "mouth.csv"\n'
+"""Text for an open boundary in the east, whose files `write_mouth` makes."""
+
 WITH_GRID = {"depth.constant": None, "depth.grid": '"depth.nc"'}
 """Changes for a depth grid, which `write_depth` makes."""
 
@@ -132,6 +135,13 @@ def write_case(folder: Path, changes=None, stations=None, shore=SHORE, name="lak
 def write_coast(path: Path, shore) -> Path:
     path.write_text(json.dumps({"type": "Polygon", "coordinates": [[list(map(float, corner)) for corner in shore]]}))
     return path
+
+
+def write_mouth(folder: Path) -> None:
+    """Write the line and the harmonic constants of `MOUTH`."""
+    line = {"type": "LineString", "coordinates": [[20e3, 2e3], [20e3, 8e3]]}
+    (folder / "mouth.geojson").write_text(json.dumps(line))
+    (folder / "mouth.csv").write_text("x,y,constituent,amplitude,lag\n20000,5000,M2,0.5,30\n20000,5000,M4,0.1,60\n")
 
 
 def write_depth(path: Path, x=(-2e3, 22e3), y=(-2e3, 12e3), depth=20.0, names=("x", "y"), slope=0.0, attributes=None) -> Path:
