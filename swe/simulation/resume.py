@@ -8,6 +8,7 @@ Every refusal names the setting, because a checksum that differs helps nobody.
 
 from __future__ import annotations
 
+import hashlib
 import json
 from collections.abc import Callable
 from pathlib import Path
@@ -17,6 +18,7 @@ from swe.errors import InputError
 from swe.mesh.topology import Mesh
 from swe.output import checkpoint
 from swe.output.checkpoint import Checkpoint
+from swe.output.durable import file_trouble
 from swe.simulation.recorder import fields_of
 
 PHYSICS = ("earth", "drag", "wind", "tide")
@@ -29,11 +31,20 @@ REMEDY = "resume with the case as it was, or start anew with --overwrite"
 
 
 def physics_key(case) -> str:
-    """Return what a checkpoint must share with the case that resumes it, as JSON by "section.key". Not collective."""
+    """Return what a checkpoint must share with the case that resumes it, as JSON by "section.key". Not collective.
+
+    Reads the files of the forcing, which may be large: ask once a run. Raises FileError.
+    """
     settings = {f"{name}.{key}": value for name in PHYSICS for key, value in vars(getattr(case, name)).items()}
     for item in case.openings:
         settings |= {f"open.{item.name}.{key}": value for key, value in vars(item).items()}
-    return json.dumps(settings | {"time.begin": case.time.begin.isoformat()}, default=str, sort_keys=True)
+    return json.dumps(settings | {"time.begin": case.time.begin.isoformat()}, default=_content, sort_keys=True)
+
+
+def _content(value: Path) -> str:
+    """Return the name of a file and what is in it: the same file may lie elsewhere, another one bear its name."""
+    with file_trouble(value, "reading the file"), open(value, "rb") as file:
+        return f"{value.name} (sha256 {hashlib.file_digest(file, 'sha256').hexdigest()[:12]})"
 
 
 def recorded(case) -> dict[str, list]:
@@ -49,20 +60,20 @@ def newest(folder: Path, say: Callable[[str], None]) -> Checkpoint:
     return saved
 
 
-def require(saved: Checkpoint, case, mesh: Mesh) -> None:
-    """Refuse a checkpoint that the case cannot go on from. Not collective. Raises InputError."""
-    _refuse_other_physics(saved, case)
-    checkpoint.require(saved, mesh.checksum(), physics_key(case))
+def require(saved: Checkpoint, case, physics: str, mesh: Mesh) -> None:
+    """Refuse a checkpoint that the case, of which `physics` is the key, cannot go on from. Not collective. Raises InputError."""
+    _refuse_other_physics(saved, physics)
+    checkpoint.require(saved, mesh.checksum(), physics)
     _refuse_other_records(saved, case)
     _refuse_other_steps(saved, case)
 
 
-def _refuse_other_physics(saved: Checkpoint, case) -> None:
+def _refuse_other_physics(saved: Checkpoint, physics: str) -> None:
     try:
         there = json.loads(saved.meta["physics_key"])
     except (KeyError, ValueError):
         return  # of another version: `checkpoint.require` refuses it
-    here = json.loads(physics_key(case))
+    here = json.loads(physics)
     names = [name for name in sorted(here | there) if there.get(name) != here.get(name)]
     if names:
         other = ", ".join(f"{name} was {there.get(name)}, is {here.get(name)}" for name in names)

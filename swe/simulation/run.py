@@ -41,10 +41,11 @@ STATION_REACH = 1.0
 
 @dataclass
 class Run:
-    """One run on its ranks. Methods are collective."""
+    """One run on its ranks. Methods are collective. `physics` is what `resume.physics_key` says of the case (rank 0)."""
 
     comm: MPI.Comm
     case: object
+    physics: str | None
     setup: Setup
     recorder: Recorder
     quiet: bool
@@ -134,7 +135,7 @@ class Run:
         """Write a checkpoint of the present state; return its path on rank 0."""
         meta = {
             "mesh_checksum": self.setup.share.checksum,
-            "physics_key": physics_key(self.case),
+            "physics_key": self.physics,
             "recorded": recorded(self.case),
             "scale": self.scale,
             "spent": self.totals().as_dict(),
@@ -166,13 +167,14 @@ def run_case(comm: MPI.Comm, case, folder: Path, resume: bool, overwrite: bool, 
         for note in result.notes if result else ():
             say(note)
         saved = on_root(comm, "reading the checkpoint", lambda: newest(result.checkpoints, say)) if resume else None
-        fits = (lambda mesh: require(saved, case, mesh)) if saved else (lambda mesh: None)
+        physics = on_root(comm, "reading the files of the forcing", physics_key, case)
+        fits = (lambda mesh: require(saved, case, physics, mesh)) if saved else (lambda mesh: None)
         mesh = on_root(comm, "making the mesh", lambda: mesh_for(case, result.path, say, fits))
         sampling = on_root(comm, "placing the stations", stations_on, case, mesh)
         setup = prepare(comm, case, mesh)
         say(_what_runs(setup, case, comm.size))
         recorder = held.enter_context(Recorder(setup, case, result, mesh, sampling))
-        run = Run(comm, case, setup, recorder, quiet, say, began=began)
+        run = Run(comm, case, physics, setup, recorder, quiet, say, began=began)
         setup.basin.phases.seconds["set-up"] = clock.monotonic() - began
         run.resume(saved) if resume else run.start(mesh)
         del mesh

@@ -6,7 +6,7 @@ import shutil
 
 import netCDF4
 import pytest
-from cases import call, write_case
+from cases import MOUTH, call, write_case, write_mouth
 from messages.refusals import in_order, refused
 
 from swe.output.lock import OutputLock
@@ -132,6 +132,21 @@ def test_a_checkpoint_of_other_physics_names_what_differs(folder):
 def test_a_checkpoint_of_another_begin(folder):
     write_case(folder, {"time.begin": "2031-01-02T00:00:00Z"})
     resumed(folder, "other physics (time.begin was 2031-01-01T00:00:00+00:00, is 2031-01-02T00:00:00+00:00)")
+
+
+def test_a_file_of_the_forcing_may_move_but_not_change(tmp_path):
+    for name in ("here", "there"):
+        (tmp_path / name).mkdir()
+        path = write_case(tmp_path / name)
+        path.write_text(path.read_text() + MOUTH)
+        write_mouth(tmp_path / name)
+    assert call(tmp_path / "here", "run", "lake.toml", "--quiet").code == 0
+    shutil.move(tmp_path / "here" / "results", tmp_path / "there")
+    folder = tmp_path / "there"
+    assert call(folder, "run", "lake.toml", "--resume", "--quiet").code == 0
+    constants = folder / "mouth.csv"
+    constants.write_text(constants.read_text().replace("0.5", "0.6"))
+    resumed(folder, "other physics (open.mouth.constants was mouth.csv (sha256 ", "), is mouth.csv (sha256 ", "as it was")
 
 
 def test_other_stations_or_fields_than_the_files_hold(folder):
