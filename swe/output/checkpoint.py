@@ -97,7 +97,7 @@ def require(checkpoint: Checkpoint, mesh_checksum: str, physics_key: str) -> Non
     """Refuse a checkpoint of another mesh or other physics. Not collective. Raises InputError."""
     for key, here, what in (
         ("mesh_checksum", mesh_checksum, "another mesh"),
-        ("physics_key", physics_key, "other physics (constants, friction, rotation, forcing or method)"),
+        ("physics_key", physics_key, "other physics (constants, friction, rotation or forcing)"),
     ):
         there = checkpoint.meta.get(key)
         if there != here:

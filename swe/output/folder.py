@@ -1,7 +1,7 @@
 """The result folder of a case, and what may be done to one that is not empty.
 
     results/<case>/
-        fields.nc  stations.nc  ledger.nc  summary.json  mesh.nc
+        fields.nc  stations.nc  ledger.nc  summary.json  report.md  mesh.nc
         figures/   checkpoints/   in-use (while a run writes)
 
 Three ways to claim it:
@@ -21,7 +21,7 @@ from swe.errors import FileError
 from swe.output.durable import file_trouble, remove_leftovers
 from swe.output.lock import OutputLock
 
-FILES = ("fields.nc", "stations.nc", "ledger.nc", "summary.json")
+FILES = ("fields.nc", "stations.nc", "ledger.nc", "summary.json", "report.md")
 CHECKPOINTS = "step-*.checkpoint"
 FIGURES = ("*.png", "*.svg", "*.pdf")
 
