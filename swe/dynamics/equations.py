@@ -29,6 +29,7 @@ from scipy import sparse
 from swe.dynamics.drag import drag
 from swe.dynamics.forcing import Forcing, Head, Stress
 from swe.dynamics.forcing.wind import wind_acceleration
+from swe.dynamics.friction import Friction, Quadratic, damping
 from swe.dynamics.opening import Opening
 from swe.dynamics.physics import Physics
 from swe.dynamics.viscosity import viscosity
@@ -67,8 +68,8 @@ class Water:
         rate -= bernoulli(op, physics.gravity, eta, u, self.heads(time))
         if self.stressed:
             rate += wind_acceleration(self.stress(time), physics.density, h_edge)
-        if physics.bottom_drag:
-            rate += drag(physics.bottom_drag, u, op.tangential @ u, h_edge)
+        if self.friction:
+            rate += drag(self.friction.coefficient(h_edge), u, op.tangential @ u, h_edge)
         if physics.lateral_viscosity:
             rate += viscosity(op, physics.lateral_viscosity, u, zeta)
         if self.opening:
@@ -93,6 +94,12 @@ class Water:
         """Return the sum of all surface stresses along n, (ne,), Pa. Not collective."""
         return sum((forcing.stress(time) for forcing in self._stresses), np.zeros(self.mesh.n_edges))
 
+    def friction_damping(self, eta: np.ndarray, u: np.ndarray) -> np.ndarray:
+        """Return the rate at which bottom friction damps a change of u, (ne,), s-1, >= 0. Not collective."""
+        if self.friction is None:
+            return np.zeros(self.mesh.n_edges)
+        return damping(self.friction, u, self.operators.tangential @ u, self.thickness(eta)[1])
+
     def heads(self, time: float) -> list[np.ndarray]:
         """Return the heads of the forcing, each (nf,), m2 s-2; none for water that has none. Not collective."""
         return [forcing.head(time) for forcing in self._heads]
@@ -105,6 +112,14 @@ class Water:
     @cached_property
     def _still(self) -> slice | np.ndarray:
         return np.flatnonzero(still_edges(self.mesh)) if self.opening else slice(self.mesh.n_inner, None)
+
+    @cached_property
+    def friction(self) -> Friction | None:
+        """Bottom friction on the edges of this mesh, None where there is none."""
+        law = self.physics.bottom_drag
+        if isinstance(law, (int, float)):
+            law = Quadratic(law) if law else None
+        return law.on(self.mesh, self.operators.face_to_edge, self.physics.gravity) if law else None
 
     @cached_property
     def _stresses(self) -> tuple[Stress, ...]:

@@ -87,6 +87,7 @@ class JacobianFactory:
         self.mean = op.face_to_edge[:ms, :mf]
         self._bound = GravityBound(mesh, mf, ms, water.physics.gravity)
         self._turn = op.tangential[:ms]
+        self._rough = water.friction and water.friction.part(slice(ms))
         self._turn_at = Places.of(self._turn)
         self._row_count = np.diff(self._turn.indptr)
         self._lift, self._lift_own = _split(-2.0 * (op.grad_inside @ op.kinetic), self._turn_at, mesh.n_inner)
@@ -154,9 +155,12 @@ class JacobianFactory:
     def _friction(self, u: np.ndarray, h_edge: np.ndarray, time: float) -> None:
         """Add the derivatives of bottom drag and wind stress by u_n and u_t; fill those by h_e."""
         ms, physics, z = self.ms, self.water.physics, self._refill.segment
-        by_u, by_t, z["by h"][:] = drag_derivatives(physics.bottom_drag, u[:ms], self._turn @ u, h_edge)
-        z["own"] += by_u
-        z["turn"] += np.repeat(by_t, self._row_count) * self._turn.data
+        z["by h"][:] = 0.0
+        if self._rough:
+            coefficient, power = self._rough.coefficient(h_edge), self._rough.power
+            by_u, by_t, z["by h"][:] = drag_derivatives(coefficient, power, u[:ms], self._turn @ u, h_edge)
+            z["own"] += by_u
+            z["turn"] += np.repeat(by_t, self._row_count) * self._turn.data
         z["by h"] -= self.water.stress(time)[:ms] / (physics.density * h_edge**2)
 
     def _assemble(self) -> Refill:
@@ -164,7 +168,7 @@ class JacobianFactory:
         turn, corner = self._turn_at.size, self._corner_at.size
         lengths = {"turn": turn, "turn u": turn, "corner": corner, "corner q": corner, "own": ms, "one": 1}
         lengths |= {"u": mesh.n_edges, "h": mesh.n_edges}
-        if water.physics.bottom_drag or water.stressed:
+        if water.friction or water.stressed:
             lengths["by h"] = ms
         assembly = Assembly((mf + ms, mf + ms), lengths)
         self._level_rows(assembly)

@@ -20,11 +20,14 @@ class WaterPatch:
     mf, ms     faces and edges of the solve part
     rotation   keep rotation in the wave operator (else it stays in the remainder)
     refresh    linearise the wave operator about the current depth at every step instead of the resting depth
+    friction   take bottom friction into the wave operator, linearised about the current at every step, instead of leaving it in
+               the remainder, where it limits the step (`friction`)
     """
 
-    def __init__(self, water: Water, mf: int, ms: int, rotation: bool, refresh: bool):
+    def __init__(self, water: Water, mf: int, ms: int, rotation: bool, refresh: bool, friction: bool = False):
         self.water, self.mf, self.ms, self.refresh = water, mf, ms, refresh
-        self._wave = wave_operator(water, mf, ms, rotation)
+        self._rubs = friction and water.friction is not None
+        self._wave = wave_operator(water, mf, ms, rotation, friction=self._rubs)
         self._jacobian: JacobianFactory | None = None
         # Levels that several subdomains hold are updated by each of them: alike, so that a resumed run, which begins
         # with the owners' levels everywhere, repeats the run that went on, bit for bit.
@@ -59,4 +62,6 @@ class WaterPatch:
             return self._jacobian.at(state.eta, state.u, time)
         if self.refresh:
             self._wave.refresh(state.eta)
+        if self._rubs:
+            self._wave.damp(self.water.friction_damping(state.eta, state.u)[: self.ms])
         return self._wave

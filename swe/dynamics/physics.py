@@ -17,6 +17,7 @@ from typing import Protocol
 
 import numpy as np
 
+from swe.dynamics.friction import FrictionLaw
 from swe.errors import InputError
 from swe.mesh.topology import Mesh
 
@@ -78,14 +79,14 @@ class Physics:
 
     gravity             g, m s-2, > 0
     density             rho of the water, kg m-3, > 0
-    bottom_drag         C_d of the quadratic law, >= 0
+    bottom_drag         C_d of the quadratic law, >= 0, or a law of bottom friction
     lateral_viscosity   nu, m2 s-1, >= 0
     coriolis            law of f
     """
 
     gravity: float
     density: float
-    bottom_drag: float
+    bottom_drag: float | FrictionLaw
     lateral_viscosity: float
     coriolis: CoriolisLaw
 

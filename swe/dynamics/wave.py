@@ -13,7 +13,9 @@ and is skew bit by bit, for variable depth, spacing and f: linear energy |M^(1/2
 D is the resting depth, or the depth at a given level (`refresh`): still skew, only the scalings change. Values beyond the
 first mf faces and ms edges are taken as zero, and so is the level of outer faces beyond an open boundary: what is given
 there enters through the remainder. A radiating boundary adds -c/(d/2) on the diagonal of its edges (`opening`) and S is
-dissipative. Source: method.md, section 4; W: Thuburn et al. 2009, J. Comput. Phys. 228, 8321.
+dissipative. Bottom friction may be added there too, linearised about the current (`damp`): its derivative by u_n on the
+diagonal of every edge. Source: method.md, section 4; W: Thuburn et al. 2009, J. Comput. Phys. 228, 8321; friction in the
+linear part as in exponential Rosenbrock methods, Hochbruck & Ostermann 2010, Acta Numerica 19, 209, section 2.4.
 """
 
 from __future__ import annotations
@@ -37,7 +39,7 @@ class Pattern:
     gravity, gravity_factor, gravity_edge             positions in the data; -+s (g/A)^(1/2); edge whose b multiplies
     rotation, rotation_factor, column_edge            positions in the data, row after row; -W/2; edge of the column
     row_count                                         (ms,) number of `rotation` entries of each edge
-    damping, damping_rate                             positions in the data; -c/(d/2) of radiating edges
+    damped, damping, damping_rate                     edges; positions in the data; -c/(d/2) of radiating edges, else 0
     distance                                          (ms,) d, d/2 across an open boundary, m
     """
 
@@ -50,6 +52,7 @@ class Pattern:
     rotation_factor: np.ndarray
     column_edge: np.ndarray
     row_count: np.ndarray
+    damped: np.ndarray
     damping: np.ndarray
     damping_rate: np.ndarray
     distance: np.ndarray
@@ -61,7 +64,7 @@ class WaveOperator:
 
     size        mf + ms
     weights     (size,) square roots of (g A_i, l_e d_e D_e)
-    skew        True: S^T = -S bit by bit; False where a boundary radiates
+    skew        True: S^T = -S bit by bit; False where a boundary radiates, or with friction
     matrix      S, (size, size) CSR
     depth_edge  (ms,) D_e, m
     """
@@ -76,6 +79,7 @@ class WaveOperator:
     matrix: sparse.csr_array
     skew: bool = True
     _radius: float | None = None
+    _strongest: float = 0.0
 
     @property
     def size(self) -> int:
@@ -113,29 +117,39 @@ class WaveOperator:
             self.matrix.data[pattern.rotation] = entries
         self._radius = None
 
+    def damp(self, rate: np.ndarray) -> None:
+        """Put bottom friction, rates (ms,), s-1, >= 0, on the diagonal, in place; only if made with friction. Not collective."""
+        rate = rate[self.pattern.damped]
+        self.matrix.data[self.pattern.damping] = self.pattern.damping_rate - rate
+        self._strongest = float(rate.max(initial=0.0))
+
     @property
     def radius(self) -> float:
         """Upper bound of the spectral radius, s-1. Not collective.
 
-        The sharp local bound of gravity waves (swe.dynamics.bounds) plus the largest absolute row sum of the rotation block.
+        The sharp local bound of gravity waves (swe.dynamics.bounds) plus the largest absolute row sum of the rotation block, plus
+        the strongest friction.
         """
         if self._radius is None:
             self._radius = self.bound(self.depth_edge)
             if self.pattern.rotation.size:
                 rows = np.repeat(np.arange(self.ms), self.pattern.row_count)
                 self._radius += float(np.bincount(rows, np.abs(self.matrix.data[self.pattern.rotation])).max())
-        return self._radius
+        return self._radius + self._strongest
 
 
-def wave_operator(water: Water, mf: int, ms: int, rotation: bool, eta: np.ndarray | None = None) -> WaveOperator:
+def wave_operator(
+    water: Water, mf: int, ms: int, rotation: bool, eta: np.ndarray | None = None, friction: bool = False
+) -> WaveOperator:
     """Return the wave operator of the first `mf` faces and `ms` edges. Not collective.
 
     rotation  keep the Coriolis block (it is dropped anyway where f = 0 everywhere)
     eta       (nf,) level whose depth is the reference, m; None: the resting depth
+    friction  make room for bottom friction (`damp`)
     """
     mesh = water.mesh
-    pattern = _pattern(water, mf, ms, rotation and bool(np.any(water.coriolis_node)))
-    # what radiates out to sea is lost to the basin: then L is dissipative
+    pattern = _pattern(water, mf, ms, rotation and bool(np.any(water.coriolis_node)), friction)
+    # what radiates out to sea, or rubs on the bottom, is lost to the basin: then L is dissipative
     skew = not pattern.damping.size
     matrix = sparse.csr_array((np.zeros(pattern.indices.size), pattern.indices, pattern.indptr), shape=(mf + ms, mf + ms))
     weights = np.empty(mf + ms)
@@ -147,14 +161,14 @@ def wave_operator(water: Water, mf: int, ms: int, rotation: bool, eta: np.ndarra
     return operator
 
 
-def _pattern(water: Water, mf: int, ms: int, rotation: bool) -> Pattern:
+def _pattern(water: Water, mf: int, ms: int, rotation: bool, friction: bool) -> Pattern:
     edge, face, sign = sides(water.mesh)
     use = (edge < ms) & ~water.mesh.face_outer[face]
     edge, face, sign = edge[use], face[use], sign[use]
     factor = sign * np.sqrt(water.physics.gravity / water.mesh.face_area[face])
     turn = water.operators.weights[:ms, :ms].tocoo() if rotation else sparse.coo_array((ms, ms))
     loss = water.opening.damping(ms) if water.opening else np.zeros(ms)
-    damped = np.flatnonzero(loss)
+    damped = np.arange(ms) if friction else np.flatnonzero(loss)
     rows = np.concatenate((face, mf + edge, mf + turn.row, mf + damped))
     columns = np.concatenate((mf + edge, face, mf + turn.col, mf + damped))
     order = np.lexsort((columns, rows))
@@ -173,6 +187,7 @@ def _pattern(water: Water, mf: int, ms: int, rotation: bool) -> Pattern:
         rotation_factor=-0.5 * turn.data[by_row],
         column_edge=turn.col[by_row].astype(np.intp),
         row_count=np.bincount(turn.row, minlength=ms),
+        damped=damped,
         damping=place[m:],
         damping_rate=-loss[damped],
         distance=gradient_distance(water.mesh)[:ms],

@@ -39,14 +39,22 @@ def water_on(mesh: Mesh, physics: Physics, forcing: ForcingOn = no_forcing, open
 
 
 def basin_of(
-    comm: MPI.Comm, share: Share, physics: Physics, forcing: ForcingOn, rotation: bool, refresh: bool, opening: OpeningOn = closed
+    comm: MPI.Comm,
+    share: Share,
+    physics: Physics,
+    forcing: ForcingOn,
+    rotation: bool,
+    refresh: bool,
+    opening: OpeningOn = closed,
+    friction: bool = False,
 ) -> Basin:
     """Return the basin of this rank. Collective.
 
-    rotation  keep rotation in the wave operator; refresh  linearise it about the current depth
+    rotation  keep rotation in the wave operator; refresh  linearise it about the current depth; friction  take it in as well
     """
     patches = [
-        WaterPatch(water_on(part.mesh, physics, forcing, opening), part.mf, part.ms, rotation, refresh) for part in share.parts
+        WaterPatch(water_on(part.mesh, physics, forcing, opening), part.mf, part.ms, rotation, refresh, friction)
+        for part in share.parts
     ]
     return Basin(comm, share.parts, patches, share.count, physics.gravity)
 
@@ -61,7 +69,8 @@ def cut_and_build(
     rotation: bool = True,
     refresh: bool = False,
     opening: OpeningOn = closed,
+    friction: bool = False,
 ) -> tuple[Share, Basin]:
     """Hand out rank 0's mesh and build the dynamics of every subdomain. Collective."""
     share = distribute(comm, mesh, count, overlap)
-    return share, basin_of(comm, share, physics, forcing, rotation, refresh, opening)
+    return share, basin_of(comm, share, physics, forcing, rotation, refresh, opening, friction)

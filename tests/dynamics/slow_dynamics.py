@@ -4,6 +4,7 @@ import numpy as np
 from scipy import sparse
 
 from swe.dynamics.drag import drag_derivatives
+from swe.dynamics.friction import Quadratic
 from swe.dynamics.viscosity import viscosity_matrix
 from swe.operators import reference as slow
 
@@ -24,10 +25,20 @@ def rates(water, eta, u, time):
         if hasattr(forcing, "stress"):
             rate += forcing.stress(time) / (physics.density * h_edge)
     rate -= slow.gradient(mesh, head)
-    rate -= physics.bottom_drag * np.hypot(u, slow.tangential(mesh, u)) * u / h_edge
+    coefficient, _ = friction(water, h_edge)
+    rate -= coefficient * np.hypot(u, slow.tangential(mesh, u)) * u / h_edge
     rate += physics.lateral_viscosity * (slow.gradient(mesh, slow.divergence(mesh, u)) - slow.gradient_along(mesh, zeta))
     rate[mesh.n_inner :] = 0.0
     return -slow.divergence(mesh, flow), rate
+
+
+def friction(water, h_edge):
+    """C_d on the edges, and p of C_d ~ h^-p, straight from the laws: a number is the quadratic law's."""
+    law, mesh = water.physics.bottom_drag, water.mesh
+    if isinstance(law, float):
+        return law, 0.0
+    on_edges = [slow.face_to_edge(mesh, value(mesh)) if callable(value) else value for value in vars(law).values()][0]
+    return (on_edges, 0.0) if isinstance(law, Quadratic) else (water.physics.gravity * on_edges**2 / h_edge ** (1 / 3), 1 / 3)
 
 
 def wave(water, mf, ms, rotation):
@@ -53,7 +64,7 @@ def jacobian(water, eta, u, time):
     flow_by_eta, flow_by_u = diag(u) @ op.face_to_edge, diag(h_edge)
     turn = 0.5 * (diag(q) @ op.tangential + op.tangential @ diag(q))
     bend = 0.5 * (diag(op.tangential @ flow) + op.tangential @ diag(flow)) @ op.node_to_edge @ diag(1.0 / h_node)
-    by_u, by_t, by_h = drag_derivatives(physics.bottom_drag, u, op.tangential @ u, h_edge)
+    by_u, by_t, by_h = drag_derivatives(*friction(water, h_edge), u, op.tangential @ u, h_edge)
     by_h = by_h - water.stress(time) / (physics.density * h_edge**2)
     wet = diag((np.arange(mesh.n_edges) < mesh.n_inner).astype(float))
     level_by = -op.div @ flow_by_eta, -op.div @ flow_by_u

@@ -8,6 +8,7 @@ from operators.operator_meshes import MESHES, part_of
 
 from swe.dynamics.drag import drag, drag_derivatives
 from swe.dynamics.equations import Water
+from swe.dynamics.friction import Manning
 from swe.dynamics.jacobian import JacobianFactory
 from swe.dynamics.physics import NoRotation
 from swe.dynamics.wave import wave_operator
@@ -18,6 +19,8 @@ TERMS = {
     "flow alone": lambda mesh: water_on(mesh, NoRotation()),
     "rotation": lambda mesh: water_on(mesh),
     "drag": lambda mesh: water_on(mesh, drag=0.0025),
+    "Manning": lambda mesh: water_on(mesh, drag=Manning(0.03)),
+    "mapped": lambda mesh: water_on(mesh, drag=Manning(lambda part: 0.02 + 1e-7 * np.abs(part.face_xyz[:, 0]) % 0.01)),
     "wind": lambda mesh: water_on(mesh, wind=(0.3, -0.2)),
     "viscosity": lambda mesh: water_on(mesh, viscosity=500.0),
     "head": lambda mesh: water_on(mesh, head=2.0),
@@ -166,20 +169,24 @@ def test_rows_of_a_restricted_mesh_are_those_of_the_whole(name):
 def test_drag_has_a_derivative_at_rest():
     """|u| u has the derivative 0 at u = 0, and no division by zero on the way."""
     zero = np.zeros(3)
-    for part in drag_derivatives(0.0025, zero, zero, np.ones(3)):
+    for part in drag_derivatives(0.0025, 0.0, zero, zero, np.ones(3)):
         assert np.array_equal(part, zero)
     tiny = np.array([1e-300, -1e-160, 0.0])
-    assert all(np.isfinite(part).all() for part in drag_derivatives(0.0025, tiny, tiny[::-1], np.ones(3)))
+    assert all(np.isfinite(part).all() for part in drag_derivatives(0.0025, 1 / 3, tiny, tiny[::-1], np.ones(3)))
 
 
-def test_drag_derivatives_are_differences():
+@pytest.mark.parametrize("power", [0.0, 1 / 3])
+def test_drag_derivatives_are_differences(power):
+    def drag_of(u, u_t, h):
+        return drag(0.0025 * h**-power, u, u_t, h)
+
     rng = np.random.default_rng(0)
     u, u_t, h = rng.standard_normal(50), rng.standard_normal(50), 5.0 + rng.random(50)
     step, arguments = 1e-6, (u, u_t, h)
-    for index, found in enumerate(drag_derivatives(0.0025, u, u_t, h)):
+    for index, found in enumerate(drag_derivatives(0.0025 * h**-power, power, u, u_t, h)):
         up = [a + step * (k == index) for k, a in enumerate(arguments)]
         down = [a - step * (k == index) for k, a in enumerate(arguments)]
-        close(found, (drag(0.0025, *up) - drag(0.0025, *down)) / (2 * step), 1e-7)
+        close(found, (drag_of(*up) - drag_of(*down)) / (2 * step), 1e-7)
 
 
 def test_wind_that_changes_is_taken_at_the_time_asked_for():
