@@ -104,37 +104,66 @@ class StormWind:
     """The 10 m wind of a storm at the edges of a mesh; what `wind.WindStress` asks for."""
 
     def __init__(self, storm: Storm, mesh: Mesh):
-        self._storm, self._where, self._radius = storm, mesh.edge_xyz, mesh.radius
-        self._axes = np.stack(axes(mesh, mesh.edge_xyz))
+        self._storm, self._places = storm, Places(mesh, mesh.edge_xyz)
 
     def __call__(self, time: float) -> np.ndarray:
         """Return the wind, (2, ne), m s-1, east and north or x and y. Not collective."""
         vortex, around = self._storm.at(time), self._storm.surroundings
         if vortex.deficit <= 0.0:
-            return np.zeros((2, len(self._where)))
-        distance, outward, turning = _about(vortex.centre, self._where, self._radius)
+            return np.zeros((2, self._places.count))
+        distance, outward = self._places.about(vortex.centre)
         settings = vortex.deficit, vortex.radius, vortex.shape, vortex.coriolis, around.air_density
         speed = gradient_wind(distance, *settings)
         greatest = gradient_wind(np.array([vortex.radius]), *settings)[0]
-        sense = 1.0 if vortex.coriolis >= 0.0 else -1.0
         inflow = around.inflow * DEGREE
-        wind = around.reduction * (sense * np.cos(inflow) * turning - np.sin(inflow) * outward)
-        wind += around.translation_share / greatest * vortex.velocity
-        wind *= speed[:, None]
-        return (self._axes * wind).sum(axis=2)
+        along = around.reduction * np.cos(inflow) * (1.0 if vortex.coriolis >= 0.0 else -1.0)
+        inward = around.reduction * np.sin(inflow)
+        carried = around.translation_share / greatest * self._places.components(vortex.velocity)
+        first = -along * outward[1] - inward * outward[0] + carried[0]
+        second = along * outward[0] - inward * outward[1] + carried[1]
+        return np.stack([speed * first, speed * second])
 
 
 class StormPressure:
     """The air pressure of a storm on the faces of a mesh; what `pressure.AirPressure` asks for."""
 
     def __init__(self, storm: Storm, mesh: Mesh):
-        self._storm, self._where, self._radius = storm, mesh.face_xyz, mesh.radius
+        self._storm, self._places = storm, Places(mesh, mesh.face_xyz)
 
     def __call__(self, time: float) -> np.ndarray:
         """Return the pressure, (1, nf), Pa. Not collective."""
         vortex = self._storm.at(time)
-        distance, _, _ = _about(vortex.centre, self._where, self._radius)
+        distance, _ = self._places.about(vortex.centre)
         return pressure(distance, vortex.ambient, vortex.deficit, vortex.radius, vortex.shape)[None]
+
+
+class Places:
+    """Points of a mesh as seen from the centre of a storm: with e, n, k the unit vectors east (x), north (y) and up at each
+
+        plane    (X, Y) = (x - x_c, y - y_c)       r = (X^2 + Y^2)^(1/2)
+        sphere   (X, Y) = -(e . c, n . c)          r = R atan2( (X^2 + Y^2)^(1/2), k . c )      along the great circle
+
+    and e_r = (X, Y) / (X^2 + Y^2)^(1/2), e_t = k x e_r. In the centre and opposite to it there is no direction: e_r = 0.
+    """
+
+    def __init__(self, mesh: Mesh, where: np.ndarray):
+        self.count, self._radius = len(where), mesh.radius
+        self._east, self._north = (np.ascontiguousarray(axis) for axis in axes(mesh, where))
+        if mesh.radius is None:
+            self._home = where[:, :2].T
+        else:
+            self._home, self._up = np.zeros((2, 1)), where / np.linalg.norm(where, axis=1, keepdims=True)
+
+    def components(self, vector: np.ndarray) -> np.ndarray:
+        """Return the two components of a vector (3,) at the points, (2, n). Not collective."""
+        return np.stack([self._east @ vector, self._north @ vector])
+
+    def about(self, centre: np.ndarray) -> tuple[np.ndarray, np.ndarray]:
+        """Return the distances (n,), m, from a centre (3,), and e_r by components, (2, n). Not collective."""
+        arm = self._home - self.components(centre)
+        size = np.hypot(arm[0], arm[1])
+        distance = size if self._radius is None else self._radius * np.arctan2(size, self._up @ centre)
+        return distance, arm / np.maximum(size, np.finfo(float).tiny)
 
 
 def _shapes(track: Track, deficit: np.ndarray, surroundings: Surroundings) -> np.ndarray:
@@ -154,20 +183,3 @@ def _shapes(track: Track, deficit: np.ndarray, surroundings: Surroundings) -> np
         )
     nearest = np.abs(track.times[:, None] - track.times[storms]).argmin(axis=1)
     return shape[nearest]
-
-
-def _about(centre: np.ndarray, where: np.ndarray, radius: float | None) -> tuple[np.ndarray, np.ndarray, np.ndarray]:
-    """Return the distance (n,), m, and the unit vectors e_r and e_t, (n, 3), at points (n, 3) about a centre.
-
-    On the sphere along great circles; in the centre and opposite to it, where there is no direction, the vectors vanish.
-    """
-    arm = where - centre
-    chord = np.linalg.norm(arm, axis=1)
-    if radius is None:
-        distance, up = chord, np.array([0.0, 0.0, 1.0])
-    else:
-        distance = 2.0 * radius * np.arcsin(np.minimum(chord / (2.0 * radius), 1.0))
-        up = where / np.linalg.norm(where, axis=1, keepdims=True)
-        arm = arm - (arm * up).sum(axis=1, keepdims=True) * up
-    outward = arm / np.maximum(np.linalg.norm(arm, axis=1, keepdims=True), np.finfo(float).tiny)
-    return distance, outward, np.cross(up, outward)

@@ -80,7 +80,7 @@ def test_a_slow_pressure_is_answered_by_the_inverse_barometer():
 
     def air(part):
         low = pattern(part)
-        return (AirPressure(lambda time: -low[None] * np.sin(np.pi * (time + 60.0) / duration / 2) ** 2, DENSITY, 0.0),)
+        return (AirPressure(lambda time: -low[None] * np.sin(np.pi * time / duration / 2) ** 2, DENSITY, 0.0),)
 
     run = rig(mesh, law=LAW, forcing=air).run(TWO_STAGE, 600.0, 288)
     barometer = pattern(mesh) / (DENSITY * GRAVITY)
