@@ -11,7 +11,7 @@ fail() {
 span() { if [ "$1" -lt 60 ]; then echo "$1 s"; else echo "$(($1 / 60)) min $(($1 % 60)) s"; fi; }
 
 # patiently TITLE SECONDS LOG COMMAND...: run a command into a log file, with a line now and every 30 s.
-# SECONDS: how long it takes on two free cores. Returns 3 after the last lines of the log when the command fails. The command is a
+# SECONDS: how long it takes on two free cores. Returns 3 after the telling lines of the log when the command fails. The command is a
 # process group of its own, so that it ends with us when we are stopped.
 patiently() {
     local title=$1 usual=$2 log=$3 begin=$SECONDS spoken=0 pid
@@ -33,8 +33,9 @@ patiently() {
     done
     trap - INT TERM HUP
     if ! wait "$pid"; then
-        say "$title failed after $(span $((SECONDS - begin))); the last lines of $log:"
-        tail -n 15 "$log" | cut -c 1-200 | sed 's/^/    /' >&2
+        say "$title failed after $(span $((SECONDS - begin))); from $log:"
+        # What pip and Python say about it afterwards hides the cause.
+        sed '/Traceback (most recent call last)/,$d; /subprocess-exited-with-error/,$d' "$log" | tail -n 15 | cut -c 1-200 | sed 's/^/    /' >&2
         return 3
     fi
 }
