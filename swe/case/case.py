@@ -18,8 +18,10 @@ from swe.case.schema import (
     MethodSection,
     OpenSection,
     OutputSection,
+    PressureSection,
     StartSection,
     StationSection,
+    StormSection,
     SubdomainsSection,
     TideSection,
     TimeSection,
@@ -44,6 +46,8 @@ class Case:
     earth: EarthSection = section(EarthSection, "rotation, gravity, density")
     drag: DragSection = section(DragSection, "friction")
     wind: WindSection = section(WindSection, "constant stress on the surface")
+    pressure: PressureSection = section(PressureSection, "pressure of the air on the surface")
+    storm: StormSection = section(StormSection, "a moving storm")
     tide: TideSection = section(TideSection, "tides: the equilibrium tide in the basin; those of open boundaries stand there")
     openings: tuple[OpenSection, ...] = section(OpenSection, "a part of the outline where the basin is open to the sea", "open")
     start: StartSection = section(StartSection, "water at the beginning")

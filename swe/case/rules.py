@@ -173,6 +173,29 @@ def names_differ(draft: Draft) -> None:
                 first[name] = table[1]
 
 
+def one_friction(draft: Draft) -> None:
+    """`drag` has `bottom` or `manning`, not both."""
+    if draft.given("drag.bottom") and draft.given("drag.manning") and draft.sound("drag.bottom", "drag.manning"):
+        draft.wrong(
+            ("drag", "manning"), "a second law of bottom friction beside bottom", "either bottom or manning", "leave one out"
+        )
+
+
+def law_of_the_wind(draft: Draft) -> None:
+    """`wind.law` is given exactly when `wind.file` or `storm.track` is."""
+    blows = draft.given("wind.file") or draft.given("storm.track")
+    if not draft.sound("wind.law", "wind.file", "storm.track"):
+        return
+    if blows and not draft.given("wind.law"):
+        draft.wrong(
+            ("wind", "law"), "missing; a wind needs a law of its drag on the water", hint='for example: law = "garratt-1977"'
+        )
+    elif draft.given("wind.law") and not blows:
+        draft.wrong(
+            ("wind", "law"), "not used in this case: the stress is given", hint="leave it out, or give [wind] file or [storm]"
+        )
+
+
 def equilibrium_on_the_sphere(draft: Draft) -> None:
     """`tide.equilibrium` is given only for a basin on the sphere."""
     path = ("tide", "equilibrium")
@@ -240,6 +263,8 @@ RULES = (
     one_overlap,
     whole_steps,
     names_differ,
+    one_friction,
+    law_of_the_wind,
     equilibrium_on_the_sphere,
     positions,
     stations_and_interval,

@@ -16,13 +16,16 @@ from swe.case.inputs import InputFile, Moment
 from swe.case.keys import ABSENT, GIVEN, OPTIONAL, REQUIRED, Same, When, key
 from swe.case.kinds import Choice, Listing, Switch, Text
 from swe.case.numbers import Number, Quantity, Whole
-from swe.constants import GRAVITY, SEA_WATER_DENSITY
+from swe.constants import AIR_DENSITY, GRAVITY, SEA_WATER_DENSITY, STANDARD_PRESSURE
 
 EXPONENTIAL = ("two-stage", "one-stage")
 """Steppers that form the action of an exponential."""
 
 PLANE_COORDINATE = Quantity(units.LENGTH, -1e8, 1e8)
 LONGITUDE = Quantity(units.ANGLE, -180.0, 360.0)
+WIND_LAWS = ("large-pond-1981", "garratt-1977", "wu-1982", "smith-1980", "smith-1988")
+"""Published laws of surface drag, as swe.dynamics.forcing.drag_laws names them (a test compares)."""
+
 LATITUDE = Quantity(units.ANGLE, -90.0, 90.0)
 DEPTH = Quantity(units.LENGTH, 0.0, 12e3, above=True)
 SPACING = Quantity(units.LENGTH, 0.0, 2e6, above=True)
@@ -185,6 +188,12 @@ class DragSection:
         0.0025,
         "0.0025",
     )
+    manning: float | None = key(
+        Number(0.0, 0.2, above=True),
+        "roughness n of Manning's law, in place of `bottom`: drag coefficient g n^2 / h^(1/3)",
+        OPTIONAL,
+        "0.025",
+    )
     viscosity: float = key(
         Quantity(units.VISCOSITY, 0.0, 1e6),
         "lateral eddy viscosity",
@@ -195,8 +204,76 @@ class DragSection:
 
 @dataclass(frozen=True)
 class WindSection:
-    east: float = key(STRESS, "wind stress on the water towards east; along x on a plane", 0.0, '"0.2 Pa"')
-    north: float = key(STRESS, "wind stress on the water towards north; along y on a plane", 0.0, '"0 Pa"')
+    east: float = key(STRESS, "constant wind stress on the water towards east; along x on a plane", 0.0, '"0.2 Pa"')
+    north: float = key(STRESS, "constant wind stress on the water towards north; along y on a plane", 0.0, '"0 Pa"')
+    file: Path | None = key(
+        InputFile("netCDF or CSV file"),
+        "wind at 10 m: a CF grid in netCDF, or the record of one station in CSV; its stress joins the constant one",
+        OPTIONAL,
+        '"wind.nc"',
+    )
+    law: str | None = key(
+        Choice(WIND_LAWS),
+        "law of the drag of a wind on the water, for `file` and for a storm; the laws differ by a fifth in stress",
+        OPTIONAL,
+        '"garratt-1977"',
+    )
+    cap: float | None = key(
+        Number(0.0, 0.02, above=True),
+        "largest drag coefficient that the law may reach",
+        When("wind.law", {GIVEN: OPTIONAL}),
+        "0.0035",
+    )
+    air_density: float = key(
+        Quantity(units.DENSITY, 0.5, 2.0),
+        "density of the air; the default is that of the standard atmosphere at sea level, ISO 2533",
+        AIR_DENSITY,
+        '"1.225 kg/m3"',
+    )
+
+
+@dataclass(frozen=True)
+class PressureSection:
+    file: Path | None = key(
+        InputFile("netCDF or CSV file"),
+        "air pressure at mean sea level: a CF grid in netCDF, or the record of one station in CSV",
+        OPTIONAL,
+        '"pressure.nc"',
+    )
+    reference: float = key(
+        Quantity(units.STRESS, 8e4, 1.1e5),
+        "pressure under which the level beyond open boundaries is the given one; the default is the standard atmosphere",
+        STANDARD_PRESSURE,
+        '"1013.25 hPa"',
+    )
+
+
+@dataclass(frozen=True)
+class StormSection:
+    track: Path | None = key(
+        InputFile("CSV file"),
+        "track of a moving storm after Holland 1980, for use without gridded weather; needs `wind.law`",
+        OPTIONAL,
+        '"storm.csv"',
+    )
+    reduction: float | None = key(
+        Number(0.0, 1.0, above=True),
+        "wind at 10 m over the gradient wind",
+        When("storm.track", {GIVEN: REQUIRED}),
+        "0.8",
+    )
+    inflow: float | None = key(
+        Quantity(units.ANGLE, 0.0, 60.0),
+        "angle by which the wind turns inwards",
+        When("storm.track", {GIVEN: REQUIRED}),
+        '"20 deg"',
+    )
+    translation_share: float | None = key(
+        Number(0.0, 1.0),
+        "share of the storm's own velocity that is added to its wind",
+        When("storm.track", {GIVEN: REQUIRED}),
+        "0.5",
+    )
 
 
 @dataclass(frozen=True)
@@ -276,6 +353,12 @@ class MethodSection:
         Switch(),
         "the wave operator follows the current depth, step by step; without it the resting depth stands",
         When("method.operator", {"wave": True}),
+        "true",
+    )
+    friction_in_operator: bool | None = key(
+        Switch(),
+        "bottom friction damps within the wave operator; keeps long steps stable in metres of water, at the cost of arnoldi",
+        When("method.operator", {"wave": False}),
         "true",
     )
     action: str | None = key(

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from collections.abc import Callable
 from dataclasses import dataclass
 from datetime import datetime
 
@@ -47,8 +48,11 @@ class Outsides:
     begin: datetime
     ramp: float
 
-    def on(self, mesh: Mesh) -> Opening | None:
-        """Return the open boundaries of a restricted mesh, None where it has none. Not collective."""
+    def on(self, mesh: Mesh, barometer: Callable[[float], np.ndarray] | None = None) -> Opening | None:
+        """Return the open boundaries of a restricted mesh, None where it has none. Not collective.
+
+        barometer   time -> level (k,), m, that the air pressure adds beyond the outer faces of `mesh`
+        """
         edges = mesh.edge_id[open_edges(mesh)[0]]
         outer = mesh.face_id[mesh.face_outer]
         if not outer.size:
@@ -69,6 +73,8 @@ class Outsides:
             eta = mean.copy()
             for where, tide in tides:
                 eta[where] += tide.level(time)
+            if barometer is not None:
+                eta += barometer(time)
             return eta
 
         return opening_of(mesh, level, self.gravity, radiating, fit)

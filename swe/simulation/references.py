@@ -90,6 +90,41 @@ REFERENCES = (
         _exponential,
     ),
     Reference(
+        "drag of the wind",
+        "Large, W. G. & Pond, S. 1981: Open ocean momentum flux measurements in moderate to strong winds. J. Phys. Oceanogr. 11, 324-336.",
+        lambda case: case.wind.law == "large-pond-1981",
+    ),
+    Reference(
+        "drag of the wind",
+        "Garratt, J. R. 1977: Review of drag coefficients over oceans and continents. Mon. Wea. Rev. 105, 915-929.",
+        lambda case: case.wind.law == "garratt-1977",
+    ),
+    Reference(
+        "drag of the wind",
+        "Wu, J. 1982: Wind-stress coefficients over sea surface from breeze to hurricane. J. Geophys. Res. 87, 9704-9706.",
+        lambda case: case.wind.law == "wu-1982",
+    ),
+    Reference(
+        "drag of the wind",
+        "Smith, S. D. 1980: Wind stress and heat flux over the ocean in gale force winds. J. Phys. Oceanogr. 10, 709-726.",
+        lambda case: case.wind.law == "smith-1980",
+    ),
+    Reference(
+        "drag of the wind",
+        "Smith, S. D. 1988: Coefficients for sea surface wind stress, heat flux, and wind profiles. J. Geophys. Res. 93, 15467-15472.",
+        lambda case: case.wind.law == "smith-1988",
+    ),
+    Reference(
+        "moving storm",
+        "Holland, G. J. 1980: An analytic model of the wind and pressure profiles in hurricanes. Mon. Wea. Rev. 108, 1212-1218.",
+        lambda case: case.storm.track is not None,
+    ),
+    Reference(
+        "friction of the bed",
+        "Manning, R. 1891: On the flow of water in open channels and pipes. Trans. Inst. Civ. Eng. Ireland 20, 161-207.",
+        lambda case: case.drag.manning is not None,
+    ),
+    Reference(
         "radiating open boundaries",
         "Flather, R. A. 1976: A tidal model of the north-west European continental shelf. Mem. Soc. R. Sci. Liege 6(10), 141-164.",
         lambda case: bool(case.openings),

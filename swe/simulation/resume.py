@@ -21,7 +21,7 @@ from swe.output.checkpoint import Checkpoint
 from swe.output.durable import file_trouble
 from swe.simulation.recorder import fields_of
 
-PHYSICS = ("earth", "drag", "wind", "tide")
+PHYSICS = ("earth", "drag", "wind", "pressure", "storm", "tide")
 """Sections of the case that a checkpoint must share with the case that resumes it."""
 
 WHOLE = 1e-6

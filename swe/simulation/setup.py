@@ -15,7 +15,7 @@ from mpi4py import MPI
 from swe.constants import DEGREE, EARTH_ROTATION
 from swe.dynamics.bounds import GravityBound
 from swe.dynamics.forcing.tide import EquilibriumHead
-from swe.dynamics.forcing.wind import ConstantWind
+from swe.dynamics.friction import Manning
 from swe.dynamics.physics import CoriolisLaw, FPlane, NoRotation, Physics, Sphere
 from swe.exponential.bounds import overlap_for
 from swe.mesh.topology import Mesh
@@ -24,7 +24,8 @@ from swe.parallel.ranks import on_root
 from swe.parallel.reductions import Assembly
 from swe.parallel.schwarz import Agreement, Basin
 from swe.simulation.basin import basin_of, closed
-from swe.simulation.boundary import outsides_of
+from swe.simulation.boundary import Outsides, outsides_of
+from swe.simulation.weather import barometer, refuse_bad_weather, weather_on
 from swe.steppers.contract import Stepper
 from swe.steppers.one_stage import OneStage
 from swe.steppers.runge_kutta import RungeKutta4
@@ -79,7 +80,12 @@ class Setup:
 
 def physics_of(case) -> Physics:
     """Return the physical settings of a case. Not collective."""
-    return Physics(case.earth.gravity, case.earth.density, case.drag.bottom, case.drag.viscosity, coriolis_of(case))
+    return Physics(case.earth.gravity, case.earth.density, friction_of(case), case.drag.viscosity, coriolis_of(case))
+
+
+def friction_of(case) -> float | Manning:
+    """Return the bottom friction of a case: the coefficient of the quadratic law, or Manning's. Not collective."""
+    return case.drag.bottom if case.drag.manning is None else Manning(case.drag.manning)
 
 
 def coriolis_of(case) -> CoriolisLaw:
@@ -93,13 +99,13 @@ def coriolis_of(case) -> CoriolisLaw:
 
 def forcing_of(case):
     """Return the maker of a case's forcing on a restricted mesh. Not collective."""
-    east, north, tide = case.wind.east, case.wind.north, case.tide
+    tide = case.tide
 
     def on(mesh: Mesh) -> tuple:
-        wind = (ConstantWind.on(mesh, east, north),) if east or north else ()
+        air = weather_on(case, mesh).forcing
         if not tide.equilibrium:
-            return wind
-        return (*wind, EquilibriumHead.on(mesh, case.earth.gravity, tide.equilibrium, case.time.begin, tide.ramp))
+            return air
+        return (*air, EquilibriumHead.on(mesh, case.earth.gravity, tide.equilibrium, case.time.begin, tide.ramp))
 
     return on
 
@@ -145,6 +151,7 @@ def _overlap(case, z: float) -> int:
 def prepare(comm: MPI.Comm, case, mesh: Mesh | None) -> Setup:
     """Hand out rank 0's mesh and build everything on it. Collective."""
     plan = comm.bcast(plan_of(case, mesh, comm.size) if comm.rank == 0 else None, root=0)
+    on_root(comm, "reading the weather", refuse_bad_weather, case, mesh)
     outsides = comm.bcast(on_root(comm, "reading the open boundaries", outsides_of, case, mesh), root=0)
     share = distribute(comm, mesh, plan.count, plan.overlap)
     method = case.method
@@ -155,7 +162,8 @@ def prepare(comm: MPI.Comm, case, mesh: Mesh | None) -> Setup:
         forcing_of(case),
         bool(method.rotation_in_operator),
         bool(method.refresh_depth),
-        outsides.on if outsides else closed,
+        _opening_of(case, outsides),
+        friction=bool(method.friction_in_operator),
     )
     return Setup(
         comm,
@@ -167,3 +175,11 @@ def prepare(comm: MPI.Comm, case, mesh: Mesh | None) -> Setup:
         Assembly(comm, basin.parts, "face", share.n_faces),
         Assembly(comm, basin.parts, "edge", share.n_edges),
     )
+
+
+def _opening_of(case, outsides: Outsides | None):
+    """Return the maker of the open boundaries of a restricted mesh, under the case's air pressure."""
+    if outsides is None:
+        return closed
+    gravity = case.earth.gravity
+    return lambda mesh: outsides.on(mesh, barometer(weather_on(case, mesh), mesh, gravity))

@@ -28,7 +28,19 @@ PLANE = {
 }
 """A sound case; keys of one section follow each other."""
 
-INPUTS = ("coast.geojson", "areas.geojson", "depth.nc", "soundings.csv", "mesh.nc", "fields.nc", "mouth.geojson", "mouth.csv")
+INPUTS = (
+    "coast.geojson",
+    "areas.geojson",
+    "depth.nc",
+    "soundings.csv",
+    "mesh.nc",
+    "fields.nc",
+    "mouth.geojson",
+    "mouth.csv",
+    "wind.nc",
+    "pressure.nc",
+    "storm.csv",
+)
 
 
 def case_text(changes: dict[str, str | None] | None = None, tail: str = "") -> str:

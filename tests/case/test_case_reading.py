@@ -12,7 +12,7 @@ from swe.case import parse_case, place_of, read_case
 from swe.errors import CaseError, FileError
 
 ROOT = Path(__file__).resolve().parents[2]
-SECTIONS = ", ".join(f"[{name}]" for name in "basin depth mesh earth drag wind tide".split())
+SECTIONS = ", ".join(f"[{name}]" for name in "basin depth mesh earth drag wind pressure storm tide".split())
 SECTIONS += ", [[open]], [start], [time], [method], [subdomains], [output], [checkpoint], [[station]]"
 MANY = """\
 titel = "A misspelt key"
@@ -86,17 +86,17 @@ def test_the_error_is_one_message_a_line(tmp_path):
         ("[wnd]\neast = 0.1\n", f"[wnd]: unknown section; allowed: {SECTIONS}; did you mean [wind]?"),
         ("[Wind]\neast = 0.1\n", f"[Wind]: unknown section; allowed: {SECTIONS}; did you mean [wind]?"),
         ("[[stations]]\nname = 'a'\n", f"[[stations]]: unknown section; allowed: {SECTIONS}; did you mean [[station]]?"),
-        ("[pressure]\n", f"[pressure]: unknown section; allowed: {SECTIONS}"),
+        ("[sand]\n", f"[sand]: unknown section; allowed: {SECTIONS}"),
         ("[station]\nname = 'a'\n", "[station]: not an array of tables; write [[station]] above each station"),
         ("[[wind]]\neast = 0.1\n", "[[wind]]: a section that stands once only; write [wind]"),
-        ("[drag]\nbotom = 0.1\n", "[drag] botom = 0.1: unknown key; allowed: bottom, viscosity; did you mean bottom?"),
-        ("[drag]\nnorth = 0.1\n", "[drag] north = 0.1: unknown key; allowed: bottom, viscosity; it is a key of [wind]"),
-        ("[drag]\ny = 0.1\n", "[drag] y = 0.1: unknown key; allowed: bottom, viscosity; it is a key of [start] and [[station]]"),
-        ('[drag]\n"a\\nb" = 0.1\n', '[drag] "a\\nb" = 0.1: unknown key; allowed: bottom, viscosity'),
-        ("[drag]\nquality = 0.1\n", "[drag] quality = 0.1: unknown key; allowed: bottom, viscosity"),
+        ("[drag]\nbotom = 0.1\n", "[drag] botom = 0.1: unknown key; allowed: bottom, manning, viscosity; did you mean bottom?"),
+        ("[drag]\nnorth = 0.1\n", "[drag] north = 0.1: unknown key; allowed: bottom, manning, viscosity; it is a key of [wind]"),
+        ("[drag]\ny = 0.1\n", "[drag] y = 0.1: unknown key; allowed: bottom, manning, viscosity; it is a key of [start] and [[station]]"),
+        ('[drag]\n"a\\nb" = 0.1\n', '[drag] "a\\nb" = 0.1: unknown key; allowed: bottom, manning, viscosity'),
+        ("[drag]\nquality = 0.1\n", "[drag] quality = 0.1: unknown key; allowed: bottom, manning, viscosity"),
         (
             "[drag]\nmore.bottom = 1\n",
-            "[drag] more = {bottom = 1}: unknown key; allowed: bottom, viscosity",
+            "[drag] more = {bottom = 1}: unknown key; allowed: bottom, manning, viscosity",
         ),
         (
             "[drag.bottom]\nx = 1\n",

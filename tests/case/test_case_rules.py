@@ -444,3 +444,16 @@ def test_names_of_open_boundaries_differ(tmp_path):
     boundary = '\n[[open]]\nname = "mouth"\nline = "mouth.geojson"\n'
     (mistake,) = mistakes(tmp_path, case_text({}, 2 * boundary))
     assert "open boundary 1 has the same name" in mistake
+
+
+@pytest.mark.parametrize(
+    ("changes", "expected"),
+    [
+        ({"drag.bottom": "0.003", "drag.manning": "0.02"}, ("[drag] manning", "a second law of bottom friction")),
+        ({"wind.file": '"wind.nc"'}, ("[wind] law", "missing; a wind needs a law of its drag on the water")),
+        ({"wind.law": '"wu-1982"'}, ("[wind] law", "not used in this case: the stress is given")),
+    ],
+)
+def test_friction_and_the_drag_of_the_wind(tmp_path, changes, expected):
+    (mistake,) = mistakes(tmp_path, case_text(changes))
+    assert all(part in mistake for part in expected)

@@ -75,6 +75,8 @@ def test_summary_for_people(tmp_path):
         "drag.viscosity                  0 m2/s   (default)",
         "wind.east                       0 Pa   (default)",
         "wind.north                      0 Pa   (default)",
+        "wind.air_density                1.225 kg/m3   (default)",
+        "pressure.reference              101325 Pa   (default)",
         "tide.ramp                       0 s   (default)",
         "start.kind                      rest   (default)",
         "time.begin                      2031-01-01T00:00:00Z",
