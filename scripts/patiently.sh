@@ -11,8 +11,8 @@ fail() {
 span() { if [ "$1" -lt 60 ]; then echo "$1 s"; else echo "$(($1 / 60)) min $(($1 % 60)) s"; fi; }
 
 # patiently TITLE SECONDS LOG COMMAND...: run a command into a log file, with a line now and every 30 s.
-# SECONDS: how long it takes on two free cores. Returns 3 after the telling lines of the log when the command fails. The command is a
-# process group of its own, so that it ends with us when we are stopped.
+# SECONDS: how long it takes on two free cores. Returns 3 after the telling lines of the log when the command fails. The
+# command is a process group of its own, so that it ends with us when we are stopped.
 patiently() {
     local title=$1 usual=$2 log=$3 begin=$SECONDS spoken=0 pid
     shift 3
