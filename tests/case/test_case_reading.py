@@ -91,7 +91,10 @@ def test_the_error_is_one_message_a_line(tmp_path):
         ("[[wind]]\neast = 0.1\n", "[[wind]]: a section that stands once only; write [wind]"),
         ("[drag]\nbotom = 0.1\n", "[drag] botom = 0.1: unknown key; allowed: bottom, manning, viscosity; did you mean bottom?"),
         ("[drag]\nnorth = 0.1\n", "[drag] north = 0.1: unknown key; allowed: bottom, manning, viscosity; it is a key of [wind]"),
-        ("[drag]\ny = 0.1\n", "[drag] y = 0.1: unknown key; allowed: bottom, manning, viscosity; it is a key of [start] and [[station]]"),
+        (
+            "[drag]\ny = 0.1\n",
+            "[drag] y = 0.1: unknown key; allowed: bottom, manning, viscosity; it is a key of [start] and [[station]]",
+        ),
         ('[drag]\n"a\\nb" = 0.1\n', '[drag] "a\\nb" = 0.1: unknown key; allowed: bottom, manning, viscosity'),
         ("[drag]\nquality = 0.1\n", "[drag] quality = 0.1: unknown key; allowed: bottom, manning, viscosity"),
         (
