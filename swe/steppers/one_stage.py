@@ -19,11 +19,8 @@ from __future__ import annotations
 
 from dataclasses import dataclass
 
-import numpy as np
-
-from swe.exponential.action import phi_action
-from swe.exponential.contract import fitting
 from swe.steppers.contract import Patch, StageResult, State, beyond
+from swe.steppers.exponential_euler import first_stage, second_action
 
 
 @dataclass(frozen=True)
@@ -42,22 +39,14 @@ class OneStage:
     ) -> StageResult:
         middle = time + 0.5 * step
         operator = patch.linear_operator("jacobian", start, middle)
-        rates = patch.rates(start, middle)
-        own = step * float(np.linalg.norm(operator.weights * rates))
-        allowed = self.tolerance * max(scale, own)
-        action = phi_action(operator, rates, step, (1, 2), allowed, fitting(operator, self.method), self.largest)
-        u = start.u[: patch.ms] + step * action.values[0][patch.mf :]
-        transport = patch.transport(start) + step * operator.transport(action.values[1])
-        work.update(operator=operator, rates=rates, allowed=allowed, u=u, transport=transport)
-        return StageResult(u, transport, action.products, action.error, own, action.reason)
+        return first_stage(self, patch, work, start, patch.rates(start, middle), operator, step, scale)
 
     def repeat(
         self, patch: Patch, work: dict, start: State, latest: State, time: float, step: float, scale: float
     ) -> StageResult:
         operator = work["operator"]
         rim = patch.rates(beyond(patch, start, latest), time + 0.5 * step) - work["rates"]
-        allowed = max(work["allowed"], self.tolerance * step * float(np.linalg.norm(operator.weights * rim)))
-        action = phi_action(operator, rim, step, (2, 3), allowed, fitting(operator, self.method), self.largest)
+        action = second_action(self, work, rim, step)
         u = work["u"] + step * action.values[0][patch.mf :]
         transport = work["transport"] + step * operator.transport(action.values[1])
         return StageResult(u, transport, action.products, action.error, 0.0, action.reason)

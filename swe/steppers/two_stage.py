@@ -17,11 +17,8 @@ from __future__ import annotations
 
 from dataclasses import dataclass
 
-import numpy as np
-
-from swe.exponential.action import phi_action
-from swe.exponential.contract import fitting
 from swe.steppers.contract import Patch, StageResult, State, beyond
+from swe.steppers.exponential_euler import first_stage, second_action
 
 
 @dataclass(frozen=True)
@@ -60,22 +57,13 @@ class TwoStage:
 
     def _predict(self, patch, work, start, time, step, scale) -> StageResult:
         operator = patch.linear_operator(self.operator, start, time)
-        rates = patch.rates(start, time)
-        own = step * float(np.linalg.norm(operator.weights * rates))
-        allowed = self.tolerance * max(scale, own)
-        action = phi_action(operator, rates, step, (1, 2), allowed, fitting(operator, self.method), self.largest)
-        u = start.u[: patch.ms] + step * action.values[0][patch.mf :]
-        transport = patch.transport(start) + step * operator.transport(action.values[1])
-        work.update(operator=operator, rates=rates, allowed=allowed, u=u, transport=transport)
-        return StageResult(u, transport, action.products, action.error, own, action.reason)
+        return first_stage(self, patch, work, start, patch.rates(start, time), operator, step, scale)
 
     def _correct(self, patch, work, start, prediction, time, step) -> StageResult:
         operator = work["operator"]
         change = patch.solve_part(prediction) - patch.solve_part(start)
         remainder = work["rates_of_prediction"] - work["rates"] - operator.apply(change)
-        # from water at rest whose forcing begins within the step there is no dt F yet that a tolerance could refer to
-        allowed = max(work["allowed"], self.tolerance * step * float(np.linalg.norm(operator.weights * remainder)))
-        action = phi_action(operator, remainder, step, (2, 3), allowed, fitting(operator, self.method), self.largest)
+        action = second_action(self, work, remainder, step)
         bend = patch.transport(prediction) - patch.transport(start) - operator.transport(change)
         u = work["u"] + step * action.values[0][patch.mf :]
         transport = work["transport"] + 0.5 * bend + step * operator.transport(action.values[1])
