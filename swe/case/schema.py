@@ -208,8 +208,8 @@ class WindSection:
     north: float = key(STRESS, "constant wind stress on the water towards north; along y on a plane", 0.0, '"0 Pa"')
     file: Path | None = key(
         InputFile("netCDF or CSV file"),
-        "wind at 10 m: a CF grid in netCDF, or one station in CSV (columns time, and speed in m/s with from in degrees, or u and v); "
-        "its stress joins the constant one",
+        "wind at 10 m: a CF grid in netCDF, or one station in CSV (columns time, and speed in m/s with from in degrees, "
+        "or u and v); its stress joins the constant one",
         OPTIONAL,
         '"wind.nc"',
     )
@@ -253,8 +253,9 @@ class PressureSection:
 class StormSection:
     track: Path | None = key(
         InputFile("CSV file"),
-        "track of a moving storm after Holland 1980, for use without gridded weather; columns time, lon and lat (or x and y), "
-        "central_pressure and ambient_pressure in hPa, radius_of_maximum_wind in km, shape or maximum_wind in m/s; needs `wind.law`",
+        "track of a moving storm after Holland 1980, for use without gridded weather; needs `wind.law`; columns time, "
+        "lon and lat (or x and y), central_pressure and ambient_pressure in hPa, radius_of_maximum_wind in km, shape or "
+        "maximum_wind in m/s",
         OPTIONAL,
         '"storm.csv"',
     )
