@@ -4,6 +4,7 @@
     east_velocity, north_velocity (time, face)       reconstructed at face centres, m s-1; x_velocity, y_velocity on a plane
     normal_velocity (time, edge)                     what the method carries, m s-1
     depth (face)                                     resting depth, m
+    outer (face)                                     1 beyond an open boundary, where there is one
     highest_level, lowest_level, strongest_current (face), each with its time: extremes over all steps of `window`
 
 The file does not depend on the number of ranks: it is written by one rank in the order of the mesh.
@@ -82,6 +83,8 @@ class FieldsFile:
         with file_trouble(path, "making the file"):
             places = define_mesh(dataset, mesh)
             _define(dataset, quantities["depth"], places, "f8")[:] = mesh.depth
+            if mesh.face_outer.any():
+                _define_outer(dataset, mesh, places)
             for name in series:
                 _define(dataset, quantities[name], places, PRECISION[precision])
             if "extremes" in names:
@@ -179,6 +182,14 @@ def _define(dataset: netCDF4.Dataset, quantity: Quantity, places: Places, kind: 
     if "area:" in (quantity.cell_methods or ""):
         variable.cell_measures = "area: face_area"
     return variable
+
+
+def _define_outer(dataset: netCDF4.Dataset, mesh: Mesh, places: Places) -> None:
+    """Mark the faces beyond an open boundary, which are not water of the basin."""
+    variable = dataset.createVariable("outer", "i1", ("face",))
+    flags = {"flag_values": np.array([0, 1], "i1"), "flag_meanings": "water_of_the_basin beyond_an_open_boundary"}
+    variable.setncatts({"long_name": "face beyond an open boundary: its level is given"} | flags | places.attributes("face"))
+    variable[:] = mesh.face_outer
 
 
 def _define_extremes(dataset: netCDF4.Dataset, quantities: dict[str, Quantity], places: Places, start: datetime) -> None:

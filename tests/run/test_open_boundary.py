@@ -1,6 +1,9 @@
 """A case with an open boundary and a tide, as a user types it: from the line on the outline to the ledger."""
 
 import json
+import subprocess
+import sys
+from pathlib import Path
 
 import netCDF4
 import numpy as np
@@ -53,6 +56,12 @@ def test_tide_comes_in_and_every_litre_is_accounted_for(bay):
     assert np.max(np.abs(rows["mass_outflow"])) > 0.1 * 1025.0 * 30e3 * 12e3 * 0.1
     np.testing.assert_allclose(rows["mass_anomaly"], -rows["mass_outflow"], rtol=1e-9, atol=1.0)
     assert rows["highest_level"].max() > 0.2
+    fields = bay / "results" / "bay" / "fields.nc"
+    with netCDF4.Dataset(fields) as data:
+        assert 5 <= np.sum(data["outer"][:]) <= 12  # one row of faces along 12 km
+        assert data["outer"].mesh == "mesh" and data["outer"].location == "face"
+    checked = subprocess.run([Path(sys.executable).parent / "ugrid-checker", fields], capture_output=True, text=True)
+    assert checked.returncode == 0 and "No problems found" in checked.stdout, checked.stdout
 
 
 def test_a_resumed_run_keeps_the_account(bay):
