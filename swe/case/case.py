@@ -16,17 +16,13 @@ from swe.case.schema import (
     EarthSection,
     MeshSection,
     MethodSection,
-    OpenSection,
     OutputSection,
-    PressureSection,
     StartSection,
     StationSection,
-    StormSection,
     SubdomainsSection,
-    TideSection,
     TimeSection,
-    WindSection,
 )
+from swe.case.schema_forcing import OpenSection, PressureSection, StormSection, TideSection, WindSection
 from swe.case.words import place
 
 

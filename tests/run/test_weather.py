@@ -6,7 +6,7 @@ import netCDF4
 import numpy as np
 import pytest
 
-from swe.case.schema import WIND_LAWS
+from swe.case.schema_forcing import WIND_LAWS
 from swe.cli.main import main
 from swe.constants import AIR_DENSITY
 from swe.dynamics.forcing.drag_laws import LAWS
