@@ -20,6 +20,9 @@ from pathlib import Path
 
 import pytest
 
+pytestmark = pytest.mark.ranks(1)
+"""In a process of its own: PETSc brings a second BLAS and its own memory into the one that has run two thousand tests."""
+
 SCRIPT = Path(__file__).resolve().parents[2] / "scripts" / "measure_operators"
 STEP = 600.0
 

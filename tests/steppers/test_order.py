@@ -22,6 +22,9 @@ from swe.steppers.reference import integrate
 from swe.steppers.runge_kutta import RungeKutta4
 from swe.steppers.two_stage import TwoStage
 
+pytestmark = pytest.mark.ranks(1)
+"""In a process of its own: PETSc brings a second BLAS and its own memory into the one that has run two thousand tests."""
+
 SPAN = 4 * 3600.0
 WAVE = TwoStage("wave", "lanczos", 1e-12, 200)
 
