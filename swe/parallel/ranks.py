@@ -6,7 +6,6 @@ leave by the same door. Unexpected ones abort the job, because the other ranks w
 
 from __future__ import annotations
 
-import os
 import signal
 import sys
 import traceback
@@ -94,8 +93,3 @@ def peak_memory() -> int:
 
     unit = 1 if sys.platform == "darwin" else 1024
     return resource.getrusage(resource.RUSAGE_SELF).ru_maxrss * unit
-
-
-def host() -> str:
-    """Return the name of this machine. Not collective."""
-    return os.uname().nodename

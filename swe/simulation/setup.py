@@ -102,7 +102,7 @@ def forcing_of(case):
     tide = case.tide
 
     def on(mesh: Mesh) -> tuple:
-        air = weather_on(case, mesh).forcing
+        air = weather_on(case, mesh)
         if not tide.equilibrium:
             return air
         return (*air, EquilibriumHead.on(mesh, case.earth.gravity, tide.equilibrium, case.time.begin, tide.ramp))
@@ -181,5 +181,4 @@ def _opening_of(case, outsides: Outsides | None):
     """Return the maker of the open boundaries of a restricted mesh, under the case's air pressure."""
     if outsides is None:
         return closed
-    gravity = case.earth.gravity
-    return lambda mesh: outsides.on(mesh, barometer(weather_on(case, mesh), mesh, gravity))
+    return lambda mesh: outsides.on(mesh, barometer(case, mesh))

@@ -7,7 +7,6 @@ stresses and heads add up. On open boundaries the level follows the pressure: et
 from __future__ import annotations
 
 from collections.abc import Callable
-from dataclasses import dataclass
 from pathlib import Path
 
 import numpy as np
@@ -29,29 +28,27 @@ from swe.mesh.surface import Plane, Sphere, Surface
 from swe.mesh.topology import Mesh
 
 
-@dataclass(frozen=True, eq=False)
-class Weather:
-    """The forcing of the air on one mesh; `pressures` are also felt beyond open boundaries."""
-
-    forcing: tuple[Forcing, ...]
-    pressures: tuple[AirPressure, ...]
-
-
-def weather_on(case, mesh: Mesh) -> Weather:
-    """Return the weather of a case on a restricted mesh. Not collective. Raises InputError naming the file."""
-    wind, pressure = case.wind, case.pressure
+def weather_on(case, mesh: Mesh) -> tuple[Forcing, ...]:
+    """Return the forcing of the air on a restricted mesh. Not collective. Raises InputError naming the file."""
+    wind = case.wind
     forcing: list[Forcing] = [ConstantWind.on(mesh, wind.east, wind.north)] if wind.east or wind.north else []
-    pressures: list[AirPressure] = []
     law = drag_law(wind.law, wind.cap) if wind.law else None
     if wind.file is not None:
         forcing.append(WindStress(mesh, InTime(_wind(case, mesh), edge_points(mesh)), law, wind.air_density))
-    if pressure.file is not None:
-        pressures.append(AirPressure(InTime(_pressure(case, mesh), face_points(mesh)), case.earth.density, pressure.reference))
     if case.storm.track is not None:
-        storm = _storm(case, mesh)
-        forcing.append(WindStress(mesh, StormWind(storm, mesh), law, wind.air_density))
-        pressures.append(AirPressure(StormPressure(storm, mesh), case.earth.density, pressure.reference))
-    return Weather((*forcing, *pressures), tuple(pressures))
+        forcing.append(WindStress(mesh, StormWind(_storm(case, mesh), mesh), law, wind.air_density))
+    return (*forcing, *pressures_on(case, mesh))
+
+
+def pressures_on(case, mesh: Mesh) -> tuple[AirPressure, ...]:
+    """Return the air pressures of a case on a restricted mesh; they add up. Not collective. Raises InputError."""
+    density, reference = case.earth.density, case.pressure.reference
+    pressures: list[AirPressure] = []
+    if case.pressure.file is not None:
+        pressures.append(AirPressure(InTime(_pressure(case, mesh), face_points(mesh)), density, reference))
+    if case.storm.track is not None:
+        pressures.append(AirPressure(StormPressure(_storm(case, mesh), mesh), density, reference))
+    return tuple(pressures)
 
 
 def refuse_bad_weather(case, mesh: Mesh) -> None:
@@ -67,12 +64,14 @@ def refuse_bad_weather(case, mesh: Mesh) -> None:
         _storm(case, mesh)
 
 
-def barometer(weather: Weather, mesh: Mesh, gravity: float) -> Callable[[float], np.ndarray] | None:
+def barometer(case, mesh: Mesh) -> Callable[[float], np.ndarray] | None:
     """Return time -> level (k,), m, that the pressure adds beyond the outer faces of a mesh; None without any. Not collective."""
     outer = np.flatnonzero(mesh.face_outer)
-    if not weather.pressures or not outer.size:
+    pressures = pressures_on(case, mesh) if outer.size else ()
+    if not pressures:
         return None
-    return lambda time: sum(pressure.inverse_barometer(time, gravity)[outer] for pressure in weather.pressures)
+    gravity = case.earth.gravity
+    return lambda time: sum(pressure.inverse_barometer(time, gravity)[outer] for pressure in pressures)
 
 
 def _surface(mesh: Mesh) -> Surface:

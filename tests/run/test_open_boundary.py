@@ -92,3 +92,15 @@ def test_mistakes_at_a_boundary_leave_with_one_line_and_code_2(bay, capsys, chan
     assert main(["run", "bay.toml", "--quiet"]) == 2
     said = capsys.readouterr().err
     assert message in said and said.count("\n") == 1 and "Traceback" not in said
+
+
+def test_low_pressure_lifts_the_water_beyond_and_within_alike(bay):
+    """Inverse barometer (checks 6.1): 10 hPa under the reference lift the sea by dp/(rho g), which flows in and stays."""
+    rows = "".join(f"2031-01-01T{hour:02d}:00:00Z,1003.25\n" for hour in range(8))
+    (bay / "air.csv").write_text("time,pressure\n" + rows)
+    text = CASE.format(hours=6).replace('constants = "west.csv"\nlevel = "0.1 m"', "") + '\n[pressure]\nfile = "air.csv"\n'
+    (bay / "bay.toml").write_text(text)
+    assert main(["run", "bay.toml", "--quiet"]) == 0
+    with netCDF4.Dataset(bay / "results" / "bay" / "fields.nc") as data:
+        level = np.asarray(data["level"][-1])
+    np.testing.assert_allclose(level, 1000.0 / (1025.0 * 9.80665), rtol=0.05)
